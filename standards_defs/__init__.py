@@ -1,0 +1,1 @@
+"""Calibration kits shipped with the package, as TOML."""

@@ -1,0 +1,1 @@
+"""Panels for notebooks: they show and edit, and compute nothing."""
