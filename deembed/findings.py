@@ -149,9 +149,7 @@ def bands_over(frequency: ArrayLike, mask: ArrayLike, *, gap: float = 0.02) -> l
 
 def sort_findings(findings: Iterable[Finding]) -> tuple[Finding, ...]:
     """Contradictions first, then warnings, then notes; larger significance first within each."""
-    return tuple(
-        sorted(findings, key=lambda f: (SEVERITIES.index(f.severity), -(f.significance or 0.0)))
-    )
+    return tuple(sorted(findings, key=lambda f: (SEVERITIES.index(f.severity), -(f.significance or 0.0))))
 
 
 def attach(data: xr.Dataset, findings: Sequence[Finding]) -> xr.Dataset:

@@ -51,9 +51,7 @@ def grid(values: ArrayLike) -> str:
         return "no points"
     if values.size == 1:
         return f"1 point, {frequency(values[0], digits=9)}"
-    return (
-        f"{values.size} points, {frequency(values[0], digits=9)} to {frequency(values[-1], digits=9)}"
-    )
+    return f"{values.size} points, {frequency(values[0], digits=9)} to {frequency(values[-1], digits=9)}"
 
 
 def some_frequencies(values: ArrayLike, *, most: int = 4) -> str:
