@@ -1,7 +1,8 @@
 """Labelled shells: what stands between analyzer and part, one arm per port or coupled, put on and taken off.
 
 A shell is a Dataset with ``outer_outer``, ``outer_inner``, ``inner_outer`` and ``inner_inner`` on
-``(..., frequency, port_out, port_in)``, labelled by part ports, and the coordinates ``z0_outer`` and ``z0_inner`` [ohm].
+``(..., frequency, port_out, port_in)``, labelled by part ports, and the coordinates ``z0_outer`` and
+``z0_inner`` [ohm].
 """
 
 from __future__ import annotations

@@ -79,10 +79,10 @@ def percent(ratio: float) -> str:
 
 def listed(words: Iterable[object], *, last: str = "and") -> str:
     """Words in a row, e.g. ``1, 2 and 3``."""
-    words = [str(w) for w in words]
-    if len(words) < 2:
-        return "".join(words)
-    return f"{', '.join(words[:-1])} {last} {words[-1]}"
+    texts = [str(w) for w in words]
+    if len(texts) < 2:
+        return "".join(texts)
+    return f"{', '.join(texts[:-1])} {last} {texts[-1]}"
 
 
 def nearest(word: str, known: Iterable[str]) -> str | None:

@@ -1,7 +1,7 @@
 """A shell is a 2N-port around an N-port: error boxes and fixtures alike.
 
-Blocks are named outer (toward the analyzer) and inner (toward the part); ``f_oi`` is the response at outer ports to
-waves entering at inner ports. One arm per port is the case of diagonal blocks.
+Blocks are named outer (toward the analyzer) and inner (toward the part); ``f_oi`` is the response at outer
+ports to waves entering at inner ports. One arm per port is the case of diagonal blocks.
 """
 
 from __future__ import annotations

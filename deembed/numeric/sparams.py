@@ -1,7 +1,8 @@
 """S-parameter algebra on plain arrays ``(..., n, n)``.
 
-Waves are pseudo-waves (Marks & Williams 1992): at a port with reference impedance z, voltage v and current i into
-the network, ``a = k (v + z i)`` and ``b = k (v - z i)`` with ``k = sqrt(Re z) / (2 |z|)``; for real z these are power waves.
+Waves are pseudo-waves (Marks & Williams 1992): at a port with reference impedance z, voltage v and current i
+into the network, ``a = k (v + z i)`` and ``b = k (v - z i)`` with ``k = sqrt(Re z) / (2 |z|)``; for real z these
+are power waves.
 Reference impedances are arrays of shape ``(..., n)`` that broadcast against the matrices' leading dims.
 """
 
@@ -79,7 +80,10 @@ def z_to_s(z: NDArray, z0: ArrayLike) -> NDArray:
 
 
 def s_to_y(s: NDArray, z0: ArrayLike) -> NDArray:
-    """Admittance matrix [S], shape (..., n, n): ``Y = Z0^-1 K^-1 (1 - S)(1 + S)^-1 K``; NaN where it does not exist."""
+    """Admittance matrix [S], shape (..., n, n); NaN where it does not exist (a short).
+
+    ``Y = Z0^-1 K^-1 (1 - S)(1 + S)^-1 K``, from the definition of the waves.
+    """
     z0 = np.asarray(z0, dtype=complex)
     k = _wave_scale(z0)
     return (1 / (k * z0))[..., :, None] * ((_eye(s) - s) @ inverse(_eye(s) + s)) * k[..., None, :]
@@ -94,7 +98,19 @@ def y_to_s(y: NDArray, z0: ArrayLike) -> NDArray:
 
 
 def s_to_abcd(s: NDArray, z0: ArrayLike) -> NDArray:
-    """Chain matrix ``[v1; i1] = [[A, B], [C, D]] [v2; -i2]`` of two-ports, shape (..., 2, 2); NaN where S21 = 0."""
+    """Chain matrix of two-ports, ``[v1; i1] = [[A, B], [C, D]] [v2; -i2]``; NaN where S21 = 0.
+
+    Parameters
+    ----------
+    s : complex array of shape (..., 2, 2)
+    z0 : complex array of shape (..., 2)
+        Reference impedances [ohm].
+
+    Returns
+    -------
+    complex array of shape (..., 2, 2)
+        A and D plain, B in ohm, C in S.
+    """
     z0 = np.asarray(z0, dtype=complex)
     k = _wave_scale(z0)
     t = s_to_t(s)
