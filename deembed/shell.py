@@ -12,7 +12,7 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 import xarray as xr
 
-from deembed import sparams as sp
+from deembed import networks as sp
 from deembed.errors import PortError
 from deembed.numeric import shell as kernel
 

@@ -1,8 +1,8 @@
 """S-parameter algebra on plain arrays ``(..., n, n)``.
 
 Waves are pseudo-waves (Marks & Williams 1992): at a port with reference impedance z, voltage v and current i
-into the network, ``a = k (v + z i)`` and ``b = k (v - z i)`` with ``k = sqrt(Re z) / (2 |z|)``; for real z these
-are power waves.
+into the network, ``a = k (v + z i)`` and ``b = k (v - z i)`` with ``k = sqrt(Re z) / (2 |z|)``; for real z
+these are power waves.
 Reference impedances are arrays of shape ``(..., n)`` that broadcast against the matrices' leading dims.
 """
 
