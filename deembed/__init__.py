@@ -6,7 +6,7 @@ Names are loaded when first used, so that ``import deembed`` costs nothing.
 from __future__ import annotations
 
 import importlib
-from typing import TYPE_CHECKING
+from typing import Any
 
 _HOME = {
     "BlindSpot": "deembed.findings",
@@ -43,11 +43,11 @@ _HOME = {
     "write_touchstone": "deembed.touchstone",
 }
 
-__all__ = sorted(_HOME)  # noqa: PLE0605
+__all__ = sorted(_HOME)
 __version__ = "0.1.0"
 
 
-def __getattr__(name: str) -> object:
+def __getattr__(name: str) -> Any:
     if name not in _HOME:
         raise AttributeError(f"module 'deembed' has no attribute {name!r}")
     value = getattr(importlib.import_module(_HOME[name]), name)
@@ -57,25 +57,3 @@ def __getattr__(name: str) -> object:
 
 def __dir__() -> list[str]:
     return sorted([*globals(), *_HOME])
-
-
-if TYPE_CHECKING:
-    from deembed.calibration import Reading, correct, predict_raw, solve_sol, solve_solt, solve_trl
-    from deembed.errors import DeembedError
-    from deembed.findings import BlindSpot, Finding
-    from deembed.job import load_job, open_outcome
-    from deembed.labels import select_ports, sparams
-    from deembed.networks import (
-        admittance,
-        cascade,
-        chain,
-        close_ports,
-        impedance,
-        renormalize,
-        transfer,
-    )
-    from deembed.physicality import assess
-    from deembed.shell import embed, shell_from_arms, shell_from_network, strip
-    from deembed.standards import Kit, load_kit
-    from deembed.threeport import assemble
-    from deembed.touchstone import from_skrf, read_touchstone, to_skrf, write_touchstone
