@@ -1,6 +1,7 @@
 """An N-port from rounds that each read some of its ports while known reflections close the others.
 
-Positions count from 0. ``reflections`` has one array of shape (..., n) per round; only entries of closed ports count.
+Ports count from 0. ``round_closings`` holds what closed each port in each round; only entries of ports that
+the round left free count.
 """
 
 from __future__ import annotations
@@ -40,8 +41,8 @@ class Assembled:
     s : complex array of shape (..., n, n)
         The whole; NaN where it could not be found.
     residuals : tuple of complex arrays of shape (..., k, k)
-        Per round, reading minus what the whole says; in the waves of the closing reflections where these are the
-        same in all rounds, in the waves of the readings where `general` is true.
+        Per round, reading minus what the whole says: in the waves of the closing reflections (`to_closed`),
+        or in the waves of the readings where `general` is true.
     general : bool array of shape (...)
         Where the general solver was used.
     converged : bool array of shape (...)
@@ -69,12 +70,13 @@ def to_closed(s: NDArray, g: NDArray) -> NDArray:
     Returns
     -------
     complex array of shape (..., n, n)
-        ``U = (1 - G)^-1 (S - G)(1 - G S)^-1 (1 - G)``: in these waves closing a port means striking out its row and
-        column. NaN where g = 1.
+        ``U = (1 - G)^-1 (S - G)(1 - G S)^-1 (1 - G)``: in these waves closing a port strikes out its row and
+        its column, nothing more. NaN where g = 1.
 
     References
     ----------
-    Tippet & Speciale 1982, IEEE Trans. MTT 30(5); written with reflections, so that no root of an impedance is needed.
+    Tippet & Speciale 1982, IEEE Trans. MTT 30(5); written with reflections, which needs no root of an
+    impedance.
     """
     with np.errstate(all="ignore"):
         one = 1.0 - g
@@ -83,7 +85,7 @@ def to_closed(s: NDArray, g: NDArray) -> NDArray:
 
 
 def from_closed(u: NDArray, g: NDArray) -> NDArray:
-    """The inverse of `to_closed`, shape (..., n, n); NaN where g = 1 or g = -1, where U holds nothing of S."""
+    """The inverse of `to_closed`, shape (..., n, n); NaN where g is 1 or -1: U then holds nothing of S."""
     with np.errstate(all="ignore"):
         one = 1.0 - g
         u = u * (one[..., :, None] / one[..., None, :])
@@ -91,7 +93,7 @@ def from_closed(u: NDArray, g: NDArray) -> NDArray:
 
 
 def _to_orthogonal(s: NDArray, g: NDArray) -> NDArray:
-    """As `to_closed`, with b' = b + conj(g) a beside a' = a - g b: regular for every g, but no physical waves."""
+    """As `to_closed`, but with b' = b + conj(g) a beside a' = a - g b: regular for every g, if unphysical."""
     return (s + diagonal_matrix(g.conj())) @ inverse(np.eye(s.shape[-1]) - g[..., :, None] * s)
 
 
@@ -100,14 +102,14 @@ def _from_orthogonal(v: NDArray, g: NDArray) -> NDArray:
 
 
 def common_reflections(
-    reflections: Sequence[NDArray], positions: Sequence[NDArray], n: int
+    round_closings: Sequence[NDArray], round_ports: Sequence[NDArray], n: int
 ) -> tuple[NDArray, NDArray]:
     """One closing reflection per port, and where all rounds agree on it.
 
     Parameters
     ----------
-    reflections : sequence of complex arrays of shape (..., n)
-    positions : sequence of int arrays of shape (k,)
+    round_closings : sequence of complex arrays of shape (..., n)
+    round_ports : sequence of int arrays of shape (k,)
         Ports each round reads.
     n : int
         Ports of the whole.
@@ -119,28 +121,32 @@ def common_reflections(
     bool array of shape (...)
         True where every port meets the same reflection in all rounds that close it.
     """
-    shape = np.broadcast_shapes(*(r.shape[:-1] for r in reflections))
+    shape = np.broadcast_shapes(*(r.shape[:-1] for r in round_closings))
     mean = np.zeros((*shape, n), dtype=complex)
     same = np.ones(shape, dtype=bool)
     for port in range(n):
-        met = [r[..., port] for r, kept in zip(reflections, positions, strict=True) if port not in kept]
-        if met:
-            agrees = np.all([np.broadcast_to(m == met[0], shape) for m in met], axis=0)
-            average = sum(met[1:], start=met[0]) / len(met)
-            mean[..., port] = np.where(agrees, met[0], average)
+        met_by_round = [
+            closing[..., port]
+            for closing, kept in zip(round_closings, round_ports, strict=True)
+            if port not in kept
+        ]
+        if met_by_round:
+            agrees = np.all([np.broadcast_to(m == met_by_round[0], shape) for m in met_by_round], axis=0)
+            average = sum(met_by_round[1:], start=met_by_round[0]) / len(met_by_round)
+            mean[..., port] = np.where(agrees, met_by_round[0], average)
             same &= agrees
     return mean, same
 
 
 def mean_of_rounds(
-    readings: Sequence[NDArray], positions: Sequence[NDArray], n: int
+    rounds: Sequence[NDArray], round_ports: Sequence[NDArray], n: int
 ) -> tuple[NDArray, list[NDArray]]:
     """Rounds placed in the whole, what was read more than once averaged plainly.
 
     Parameters
     ----------
-    readings : sequence of complex arrays of shape (..., k, k)
-    positions : sequence of int arrays of shape (k,)
+    rounds : sequence of complex arrays of shape (..., k, k)
+    round_ports : sequence of int arrays of shape (k,)
     n : int
 
     Returns
@@ -150,20 +156,21 @@ def mean_of_rounds(
     list of complex arrays of shape (..., k, k)
         Reading minus mean, per round.
     """
-    shape = np.broadcast_shapes(*(r.shape[:-2] for r in readings))
+    shape = np.broadcast_shapes(*(r.shape[:-2] for r in rounds))
     total = np.zeros((*shape, n, n), dtype=complex)
     count = np.zeros((n, n))
-    for reading, kept in zip(readings, positions, strict=True):
+    for reading, kept in zip(rounds, round_ports, strict=True):
         total[..., kept[:, None], kept] += reading
         count[kept[:, None], kept] += 1
-    mean = total / np.where(count > 0, count, np.nan)
-    return mean, [m - mean[..., p[:, None], p] for m, p in zip(readings, positions, strict=True)]
+    with np.errstate(invalid="ignore"):
+        mean = total / np.where(count > 0, count, np.nan)
+    return mean, [m - mean[..., p[:, None], p] for m, p in zip(rounds, round_ports, strict=True)]
 
 
 def _linearized(s: NDArray, kept: NDArray, g: NDArray) -> tuple[NDArray, NDArray]:
-    """What a round reads of s, and its derivative to the elements of s, shapes (m, k, k) and (m, k k, n n).
+    """What a round reads of s, and its derivative to the elements of s: shapes (m, k, k) and (m, k k, n n).
 
-    With the other ports closed, reading = S_kk + S_kc G (1 - S_cc G)^-1 S_ck, and a change dS shows as P dS Q.
+    With the others closed, a round reads S_kk + S_kc G (1 - S_cc G)^-1 S_ck; a change dS shows as P dS Q.
     """
     m, n = s.shape[0], s.shape[-1]
     closed = np.setdiff1d(np.arange(n), kept)
@@ -194,22 +201,30 @@ def _least_squares(a: NDArray, b: NDArray) -> NDArray:
 
 
 def _gauss_newton(
-    readings: Sequence[NDArray], positions: Sequence[NDArray], reflections: Sequence[NDArray], start: NDArray
+    rounds: Sequence[NDArray],
+    round_ports: Sequence[NDArray],
+    round_closings: Sequence[NDArray],
+    start: NDArray,
 ) -> tuple[NDArray, NDArray, int]:
-    """Whole that fits all readings best from a start, where it converged, and the steps taken; flat batches."""
+    """The whole that fits all rounds best, where that converged, and the steps it took (flat batches)."""
     s = start.copy()
     m, n = s.shape[0], s.shape[-1]
     converged = np.zeros(m, dtype=bool)
     active = np.flatnonzero(np.isfinite(s).all(axis=(-2, -1)))
     taken = 0
-    while active.size and taken < _MOST_STEPS:
-        taken += 1
-        parts = [_linearized(s[active], p, g[active]) for p, g in zip(positions, reflections, strict=True)]
+    for step_number in range(_MOST_STEPS):
+        if not active.size:
+            break
+        taken = step_number + 1
+        per_round = [
+            _linearized(s[active], p, g[active]) for p, g in zip(round_ports, round_closings, strict=True)
+        ]
         missing = [
-            (r[active] - seen).reshape(active.size, -1) for r, (seen, _) in zip(readings, parts, strict=True)
+            (r[active] - seen).reshape(active.size, -1)
+            for r, (seen, _) in zip(rounds, per_round, strict=True)
         ]
         step = _least_squares(
-            np.concatenate([d for _, d in parts], axis=-2), np.concatenate(missing, axis=-1)
+            np.concatenate([d for _, d in per_round], axis=-2), np.concatenate(missing, axis=-1)
         )
         s[active] += step.reshape(-1, n, n)
         largest = np.abs(step).max(axis=-1)
@@ -220,19 +235,19 @@ def _gauss_newton(
 
 
 def solve_general(
-    readings: Sequence[NDArray],
-    positions: Sequence[NDArray],
-    reflections: Sequence[NDArray],
-    starts: Sequence[NDArray],
+    rounds: Sequence[NDArray],
+    round_ports: Sequence[NDArray],
+    round_closings: Sequence[NDArray],
+    starts_in_order: Sequence[NDArray],
 ) -> tuple[NDArray, NDArray, int]:
-    """The whole that fits all readings best (least squares, Gauss-Newton), whatever closed the ports in each round.
+    """The whole that fits all rounds best (least squares, Gauss-Newton), whatever closed the ports in each.
 
     Parameters
     ----------
-    readings : sequence of complex arrays of shape (m, k, k)
-    positions : sequence of int arrays of shape (k,)
-    reflections : sequence of complex arrays of shape (m, n)
-    starts : sequence of complex arrays of shape (m, n, n)
+    rounds : sequence of complex arrays of shape (m, k, k)
+    round_ports : sequence of int arrays of shape (k,)
+    round_closings : sequence of complex arrays of shape (m, n)
+    starts_in_order : sequence of complex arrays of shape (m, n, n)
         Tried in turn; a later one only where those before did not converge.
 
     Returns
@@ -244,18 +259,18 @@ def solve_general(
     int
         Most steps taken.
     """
-    m, n = starts[0].shape[0], starts[0].shape[-1]
+    m, n = starts_in_order[0].shape[0], starts_in_order[0].shape[-1]
     s = np.full((m, n, n), np.nan, dtype=complex)
     converged = np.zeros(m, dtype=bool)
-    equations = sum(p.size**2 for p in positions)
+    equations = sum(p.size**2 for p in round_ports)
     block = max(64, _BLOCK_NUMBERS // (equations * n * n))
     most = 0
-    for start in starts:
+    for start in starts_in_order:
         open_points = np.flatnonzero(~converged)
         for first in range(0, open_points.size, block):
             chosen = open_points[first : first + block]
             found, good, taken = _gauss_newton(
-                [r[chosen] for r in readings], positions, [g[chosen] for g in reflections], start[chosen]
+                [r[chosen] for r in rounds], round_ports, [g[chosen] for g in round_closings], start[chosen]
             )
             s[chosen[good]] = found[good]
             converged[chosen] = good
@@ -264,17 +279,17 @@ def solve_general(
 
 
 def assemble(
-    readings: Sequence[NDArray], positions: Sequence[NDArray], reflections: Sequence[NDArray], n: int
+    rounds: Sequence[NDArray], round_ports: Sequence[NDArray], round_closings: Sequence[NDArray], n: int
 ) -> Assembled:
     """The whole N-port from its rounds.
 
     Parameters
     ----------
-    readings : sequence of complex arrays of shape (..., k, k)
+    rounds : sequence of complex arrays of shape (..., k, k)
         One per round.
-    positions : sequence of int arrays of shape (k,)
+    round_ports : sequence of int arrays of shape (k,)
         Ports each round read, in the order of its rows.
-    reflections : sequence of complex arrays of shape (..., n)
+    round_closings : sequence of complex arrays of shape (..., n)
         What closed each port in each round; entries of ports the round reads are ignored.
     n : int
         Ports of the whole; every pair of ports must share a round.
@@ -282,47 +297,45 @@ def assemble(
     Returns
     -------
     Assembled
-        Exact, with the plain mean of what was read more than once taken in the waves of the closing reflections,
-        where each port always met the same reflection; by `solve_general` elsewhere and where such a
-        reflection is +1 or -1, at which those waves hold nothing of the part.
+        Exact where each port always met the same reflection: what was read more than once is the plain mean,
+        taken in the waves of those reflections. By `solve_general` elsewhere, and where a reflection is +1 or
+        -1, at which those waves hold nothing of the part.
     """
-    shape = np.broadcast_shapes(*(r.shape[:-2] for r in readings), *(g.shape[:-1] for g in reflections))
-    g, same = common_reflections(reflections, positions, n)
-    mean, residuals = mean_of_rounds(
-        [to_closed(r, g[..., p]) for r, p in zip(readings, positions, strict=True)], positions, n
+    shape = np.broadcast_shapes(*(r.shape[:-2] for r in rounds), *(g.shape[:-1] for g in round_closings))
+    g, same = common_reflections(round_closings, round_ports, n)
+    matched = not g.any()  # the transform is then the identity: leave every digit as read
+    in_closed = (
+        rounds if matched else [to_closed(r, g[..., p]) for r, p in zip(rounds, round_ports, strict=True)]
     )
-    s = np.broadcast_to(from_closed(mean, g), (*shape, n, n))
+    mean, residuals_of_rounds = mean_of_rounds(in_closed, round_ports, n)
+    s = np.broadcast_to(mean if matched else from_closed(mean, g), (*shape, n, n))
     general = np.broadcast_to(~(same & (np.abs(1.0 - g**2) > _SINGULAR).all(axis=-1)), shape)
-    residuals = [np.broadcast_to(r, shape + r.shape[-2:]) for r in residuals]
-    converged = np.ones(shape, dtype=bool)
-    if not general.any():
-        return Assembled(s, tuple(residuals), general, converged, 0)
-    return _with_general(
-        readings, positions, reflections, g, Assembled(s, tuple(residuals), general, converged, 0)
-    )
+    residuals = tuple(np.broadcast_to(r, shape + r.shape[-2:]) for r in residuals_of_rounds)
+    plain = Assembled(s, residuals, general, np.ones(shape, dtype=bool), 0)
+    return _with_general(rounds, round_ports, round_closings, g, plain) if general.any() else plain
 
 
 def _with_general(
-    readings: Sequence[NDArray],
-    positions: Sequence[NDArray],
-    reflections: Sequence[NDArray],
+    rounds: Sequence[NDArray],
+    round_ports: Sequence[NDArray],
+    round_closings: Sequence[NDArray],
     g: NDArray,
     plain: Assembled,
 ) -> Assembled:
     """Replace the points marked general by what the general solver finds there."""
     shape, n = plain.general.shape, plain.s.shape[-1]
     where = plain.general
-    flat = [np.broadcast_to(r, shape + r.shape[-2:])[where] for r in readings]
-    closing = [np.broadcast_to(r, (*shape, n))[where] for r in reflections]
+    flat = [np.broadcast_to(r, shape + r.shape[-2:])[where] for r in rounds]
+    closing = [np.broadcast_to(r, (*shape, n))[where] for r in round_closings]
     g = np.broadcast_to(g, (*shape, n))[where]
     placed = mean_of_rounds(
-        [_to_orthogonal(r, g[:, p]) for r, p in zip(flat, positions, strict=True)], positions, n
+        [_to_orthogonal(r, g[:, p]) for r, p in zip(flat, round_ports, strict=True)], round_ports, n
     )[0]
-    starts = [_from_orthogonal(placed, g), mean_of_rounds(flat, positions, n)[0]]
-    solved, good, steps = solve_general(flat, positions, closing, starts)
+    starts_in_order = [_from_orthogonal(placed, g), mean_of_rounds(flat, round_ports, n)[0]]
+    solved, good, steps = solve_general(flat, round_ports, closing, starts_in_order)
     s, converged = plain.s.copy(), plain.converged.copy()
     s[where], converged[where] = solved, good
-    residuals = [r.copy() for r in plain.residuals]
-    for residual, reading, kept, closed in zip(residuals, flat, positions, closing, strict=True):
+    residuals = [round_residual.copy() for round_residual in plain.residuals]
+    for residual, reading, kept, closed in zip(residuals, flat, round_ports, closing, strict=True):
         residual[where] = reading - _linearized(solved, kept, closed)[0]
     return Assembled(s, tuple(residuals), where, converged, steps)
