@@ -109,9 +109,9 @@ def unsolved_findings(
     found = []
     if empty.any():
         text = (
-            f"At {words.some_frequencies(f[empty])} no part fits these rounds and terminations (no "
-            "solution, or none that the solver settled on); the part is left empty there. Close free ports with a better "
-            "match and read the rounds again."
+            f"At {words.some_frequencies(f[empty])} no part fits these rounds and terminations: there is no "
+            "solution, or the solver settled on none. The part is left empty there. Close free ports with a "
+            "better match and read the rounds again."
         )
         found.append(_over_frequencies("assembly", "", "warning", text, f[empty], 1))
     if general.any():
@@ -140,8 +140,8 @@ def disagreement_findings(disagreement: xr.DataArray, limit: float) -> list[Find
                 kind="disagreement",
                 where=f"round {label}, part port {port}",
                 severity="warning",
-                sentence=f"{{start}} the reflection of part port {port} read in round {label} is up to "
-                "{worst} (wave amplitude) from the mean of its readings{at}" + worst_of(outer) + "; a "
+                sentence=f"{{start}} the reflection of part port {port} read in round {label} is by a "
+                "wave amplitude of up to {worst} off the mean of its readings{at}" + worst_of(outer) + "; a "
                 "round, its connections or a termination is not what the job says.",
             )
     return found
@@ -165,6 +165,6 @@ def repeat_findings(
                 severity="warning",
                 sentence=f"{{start}} the transmission between part ports {ports[i]} and {ports[j]} read in "
                 f"{name} "
-                "is up to {worst} (wave amplitude) from what all rounds together say{at}.",
+                "is by a wave amplitude of up to {worst} off what all rounds together say{at}.",
             )
     return found

@@ -70,9 +70,9 @@ def assemble(
     """Put a part together from corrected rounds.
 
     Exact where each part port always met the same reflection when left free: readings go into waves in which
-    that reflection is a match, where they are simply elements of the whole (Tippet & Speciale 1982), and what
-    was read more than once is their plain mean. Where terminations differ between rounds, or are an ideal open
-    or short, the part that fits all readings best is found by Gauss-Newton.
+    that reflection is a match and which make them plain elements of the whole (Tippet & Speciale 1982);
+    what was read more than once is their mean. Where terminations differ between rounds, or are an ideal
+    open or short, the part that fits all readings best is found by Gauss-Newton.
 
     Parameters
     ----------
