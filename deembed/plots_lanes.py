@@ -1,0 +1,301 @@
+"""The lane map as SVG: lanes to scale in picoseconds, planes as rules, states by shape and in words."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from xml.sax.saxutils import escape, quoteattr
+
+from deembed.plots_style import Theme
+from deembed.views.lane_map import Lane, LaneMap, Segment
+
+__all__ = ["Layout", "lanes_svg", "layout_of", "segment_boxes"]
+
+TEXT = 15  # px, 11.25 pt
+_ROW, _TALL, _CAPTION, _GAP, _TOP = 34, 24, 22, 22, 34
+_LEFT, _TAB = 128, 46  # words of the lane, then the analyzer port's tab
+_BREAK_RATIO = 3.5  # error boxes longer than this many arms are drawn short
+SHAPES = {"plain": "", "note": "◇", "warning": "◈", "contradiction": "◆", "absent": ""}
+
+
+@dataclass(frozen=True)
+class Layout:
+    """Where everything goes [px].
+
+    Parameters
+    ----------
+    width, height : float
+    part_x : float
+        The part's plane.
+    px_per_ps : float
+        Scale right of the break.
+    broken_at : float
+        Everything left of this is not to scale; 0 when all of it is.
+    boxes : dict of id to (x, y, width, height)
+        Rectangle of every segment, for pointing at it.
+    rows : dict of part port to (top, middle, bottom)
+    """
+
+    width: float
+    height: float
+    part_x: float
+    px_per_ps: float
+    broken_at: float
+    boxes: dict[str, tuple[float, float, float, float]]
+    rows: dict[int, tuple[float, float, float]]
+
+
+def _scale(lane_map: LaneMap, room: float) -> tuple[float, bool]:
+    """Pixels per picosecond, and whether error boxes must be drawn short."""
+    arms = [s.to_ps - s.from_ps for lane in lane_map.lanes for s in lane.of("arm")]
+    longest = max(arms, default=0.0)
+    if longest > 0 and lane_map.total_ps > (1 + _BREAK_RATIO) * longest:
+        return 0.5 * room / longest, True
+    return (room / lane_map.total_ps if lane_map.total_ps > 0 else 0.0), False
+
+
+def layout_of(lane_map: LaneMap, *, width: float = 960) -> Layout:
+    """Place every segment of a lane map.
+
+    Parameters
+    ----------
+    lane_map : LaneMap
+    width : float
+        [px]
+
+    Returns
+    -------
+    Layout
+    """
+    part_x = width - 190
+    first = _LEFT + _TAB
+    scale, broken = _scale(lane_map, part_x - first)
+    boxes: dict[str, tuple[float, float, float, float]] = {}
+    rows: dict[int, tuple[float, float, float]] = {}
+    y = float(_TOP)
+    for lane in lane_map.lanes:
+        branches = max(len(lane.of("analyzer-port")), 1)
+        top, bottom = y, y + branches * _ROW
+        rows[lane.part_port] = (top, (top + bottom) / 2, bottom)
+        boxes.update(_lane_boxes(lane, rows[lane.part_port], part_x, scale, first if broken else None))
+        y = bottom + _CAPTION + _GAP
+    bottom = y - _GAP
+    boxes["part"] = (part_x + 70, _TOP, 104, bottom - _CAPTION - _TOP)
+    arm_start = min([part_x + scale * s.from_ps for lane in lane_map.lanes for s in lane.of("arm")] or [part_x])
+    return Layout(width, bottom + 58, part_x, scale, arm_start - 24 if broken else 0.0, boxes, rows)
+
+
+def _lane_boxes(lane, row, part_x: float, scale: float, short_from: float | None) -> dict:
+    top, middle, bottom = row
+    out = {}
+    for kind in ("analyzer-port", "error-box"):
+        for k, s in enumerate(lane.of(kind)):
+            y = top + k * _ROW + (_ROW - _TALL) / 2
+            end = part_x + scale * s.to_ps
+            start = part_x + scale * s.from_ps if short_from is None else short_from
+            out[s.id] = (start, y, end - start, _TALL)
+            if kind == "analyzer-port":
+                out[s.id] = (start - _TAB, y, _TAB, _TALL)
+    for s in lane.of("cable-plane"):
+        out[s.id] = (part_x + scale * s.from_ps - 5, top - 2, 10, bottom - top + 4)
+    for s in lane.of("arm"):
+        x = part_x + scale * s.from_ps
+        out[s.id] = (x, middle - _TALL / 2, part_x - x, _TALL)
+    for s in lane.of("part-port"):
+        out[s.id] = (part_x + 8, middle - 15, 30, 30)
+    return out
+
+
+def segment_boxes(lane_map: LaneMap, *, width: float = 960) -> dict[str, tuple[float, float, float, float]]:
+    """Rectangle (x, y, width, height) [px] of every segment id, as drawn at this width."""
+    return layout_of(lane_map, width=width).boxes
+
+
+def _text(x: float, y: float, words: str, ink: str, *, anchor: str = "start", more: str = "") -> str:
+    return f'<text x="{x:.1f}" y="{y:.1f}" text-anchor="{anchor}" fill="{ink}" {more}>{escape(words)}</text>'
+
+
+def _outline(s: Segment, box: tuple[float, float, float, float]) -> str:
+    """Path of a segment; a warning has a notch in its upper edge."""
+    x, y, w, h = box
+    notch = min(7.0, w / 3)
+    middle = x + w / 2
+    dent = f"L{middle - notch:.1f},{y:.1f} L{middle:.1f},{y + notch:.1f} L{middle + notch:.1f},{y:.1f} "
+    dent = dent if s.state == "warning" else ""
+    if s.kind == "arm":
+        r = min(h / 2, w / 2)
+        return (
+            f"M{x + r:.1f},{y:.1f} {dent}L{x + w - r:.1f},{y:.1f} A{r:.1f},{h / 2:.1f} 0 0 1 {x + w - r:.1f},{y + h:.1f} "
+            f"L{x + r:.1f},{y + h:.1f} A{r:.1f},{h / 2:.1f} 0 0 1 {x + r:.1f},{y:.1f} Z"
+        )
+    if s.kind == "analyzer-port":
+        return (
+            f"M{x:.1f},{y:.1f} {dent}L{x + w - 10:.1f},{y:.1f} L{x + w:.1f},{y + h / 2:.1f} "
+            f"L{x + w - 10:.1f},{y + h:.1f} L{x:.1f},{y + h:.1f} Z"
+        )
+    return f"M{x:.1f},{y:.1f} {dent}L{x + w:.1f},{y:.1f} L{x + w:.1f},{y + h:.1f} L{x:.1f},{y + h:.1f} Z"
+
+
+def _short_words(s: Segment, room: float) -> str:
+    """The longest name that fits."""
+    number = s.where.rsplit(" ", 1)[-1]
+    length = s.to_ps - s.from_ps
+    size = f"{length:.0f} ps" if length < 9999 else f"{length / 1000:.1f} ns"
+    told = {
+        "analyzer-port": (f"port {number}", number),
+        "error-box": (f"error box, {size}", "error box", "box"),
+        "arm": (f"arm {number}, {size}", f"arm {number}", number),
+        "part-port": (number,),
+        "part": ("the part", "part"),
+    }.get(s.kind, ("",))
+    if s.kind == "error-box" and s.state == "absent":
+        told = ("corrected before", "")
+    if s.kind == "arm" and s.state == "absent":
+        told = ("",)
+    return next((t for t in told if 8.2 * len(t) + 8 <= room), "")
+
+
+def _segment(s: Segment, box: tuple[float, float, float, float], style: Theme, *, selected: bool, uid: str) -> str:
+    x, y, w, h = box
+    fill = {"contradiction": f"url(#{uid}-hatch)", "warning": style.shade_strong}.get(s.state, style.paper)
+    fill = "none" if s.state == "absent" else fill
+    dash = ' stroke-dasharray="5 4"' if s.state == "absent" else ""
+    wide = 3.5 if selected else 1.5
+    label = _short_words(s, w)
+    body = []
+    if s.kind == "cable-plane":
+        stroke = 5 if s.state in ("warning", "contradiction") or selected else 3
+        body.append(
+            f'<line x1="{x + w / 2:.1f}" x2="{x + w / 2:.1f}" y1="{y:.1f}" y2="{y + h:.1f}" stroke="{style.ink}" '
+            f'stroke-width="{stroke}"/>'
+        )
+    elif s.kind == "part-port":
+        body.append(
+            f'<circle cx="{x + w / 2:.1f}" cy="{y + h / 2:.1f}" r="{h / 2:.1f}" fill="{fill}" stroke="{style.ink}" '
+            f'stroke-width="{wide}"/>'
+        )
+    elif w > 0:
+        body.append(f'<path d="{_outline(s, box)}" fill="{fill}" stroke="{style.ink}" stroke-width="{wide}"{dash}/>')
+    if label and s.state == "contradiction":
+        pill = 8.2 * len(label) + 6
+        body.append(
+            f'<rect x="{x + w / 2 - pill / 2:.1f}" y="{y + h / 2 - 10:.1f}" width="{pill:.1f}" height="20" '
+            f'fill="{style.paper}"/>'
+        )
+    if label:
+        bold = 'font-weight="bold"' if selected else ""
+        body.append(_text(x + w / 2, y + h / 2 + 5, label, style.ink, anchor="middle", more=bold))
+    if selected:
+        body.append(
+            f'<rect x="{x - 4:.1f}" y="{y - 4:.1f}" width="{w + 8:.1f}" height="{h + 8:.1f}" rx="4" fill="none" '
+            f'stroke="{style.hues[0]}" stroke-width="2.5" stroke-dasharray="2 3"/>'
+        )
+    chosen = ' data-chosen="yes"' if selected else ""
+    return f'<g class="segment" data-segment={quoteattr(s.id)} data-state="{s.state}"{chosen}>{"".join(body)}</g>'
+
+
+def _caption(lane: Lane) -> str:
+    """What is noted along a lane, with shapes, in words."""
+    told: dict[str, None] = {}
+    for s in lane.segments:
+        if s.state not in ("plain", "absent"):
+            name = s.where if s.kind in ("error-box", "analyzer-port") else s.title.lower()
+            told[f"{SHAPES[s.state]} {name}: {s.state_words}"] = None
+    return "   ".join(told)
+
+
+def _ticks(total: float, room: float) -> list[float]:
+    """Round distances [ps], about one per 90 px."""
+    if total <= 0:
+        return [0.0]
+    raw = total / max(room / 90, 1)
+    size = 10 ** math.floor(math.log10(raw))
+    step = next(m * size for m in (1, 2, 5, 10) if m * size >= raw)
+    return [k * step for k in range(int(total / step + 1e-9) + 1)]
+
+
+def _axis(lane_map: LaneMap, at: Layout, style: Theme) -> str:
+    y = at.height - 44
+    first = at.broken_at or _LEFT + _TAB
+    reach = (at.part_x - first) / at.px_per_ps if at.px_per_ps else 0.0
+    out = [
+        f'<line x1="{first:.1f}" x2="{at.part_x:.1f}" y1="{y}" y2="{y}" stroke="{style.ink}" stroke-width="1.2"/>'
+    ]
+    for t in _ticks(reach, at.part_x - first):
+        x = at.part_x - t * at.px_per_ps
+        out.append(f'<line x1="{x:.1f}" x2="{x:.1f}" y1="{y}" y2="{y + 6}" stroke="{style.ink}"/>')
+        out.append(_text(x, y + 21, f"{t:g}", style.ink, anchor="middle"))
+    words = "electrical distance from the part plane (ps)"
+    if at.broken_at:
+        out.append(_text(_LEFT + _TAB, y + 5, "not to scale left of the break", style.ink))
+    out.append(_text(at.part_x, y + 40, words, style.ink, anchor="end"))
+    return "".join(out)
+
+
+def _breaks(lane_map: LaneMap, at: Layout, style: Theme) -> str:
+    """A gap with two slanted strokes across every error box that is drawn short."""
+    if not at.broken_at:
+        return ""
+    out = []
+    for lane in lane_map.lanes:
+        for s in lane.of("error-box"):
+            x, y, w, h = at.boxes[s.id]
+            cut = x + w - 16
+            gap = f"{cut - 4:.1f},{y + h + 3:.1f} {cut + 2:.1f},{y - 3:.1f} {cut + 8:.1f},{y - 3:.1f} {cut + 2:.1f},{y + h + 3:.1f}"
+            out.append(f'<polygon points="{gap}" fill="{style.paper}"/>')
+            for dx in (0, 6):
+                out.append(
+                    f'<line x1="{cut - 4 + dx:.1f}" y1="{y + h + 3:.1f}" x2="{cut + 2 + dx:.1f}" y2="{y - 3:.1f}" '
+                    f'stroke="{style.ink}" stroke-width="1.3"/>'
+                )
+    return "".join(out)
+
+
+def _wires(lane: Lane, at: Layout, style: Theme) -> str:
+    """From the arm's end over the part port to the part."""
+    middle = at.rows[lane.part_port][1]
+    px = at.boxes["part"][0]
+    return (
+        f'<line x1="{at.part_x:.1f}" x2="{px:.1f}" y1="{middle:.1f}" y2="{middle:.1f}" stroke="{style.ink}" '
+        f'stroke-width="2"/>'
+    )
+
+
+def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: Theme) -> str:
+    """See `deembed.plots.lane_map_svg`."""
+    at = layout_of(lane_map, width=width)
+    uid = f"lanes-{style.name}"
+    out = [
+        f'<defs><pattern id="{uid}-hatch" width="7" height="7" patternUnits="userSpaceOnUse" '
+        f'patternTransform="rotate(45)"><rect width="7" height="7" fill="{style.paper}"/>'
+        f'<line x1="0" y1="0" x2="0" y2="7" stroke="{style.ink}" stroke-width="2.2"/></pattern></defs>'
+    ]
+    foot = at.height - 44
+    out.append(
+        f'<line x1="{at.part_x:.1f}" x2="{at.part_x:.1f}" y1="{_TOP - 10}" y2="{foot:.1f}" stroke="{style.ink}" '
+        f'stroke-width="1.4" stroke-dasharray="10 3"/>'
+    )
+    out.append(_text(at.part_x, _TOP - 14, "part plane", style.ink, anchor="middle"))
+    for n, lane in enumerate(lane_map.lanes):
+        top, middle, bottom = at.rows[lane.part_port]
+        out.append(_wires(lane, at, style))
+        for k, s in enumerate(lane.of("analyzer-port")):
+            out.append(_text(8, top + k * _ROW + _ROW / 2 + 5, f"round {s.round_label}", style.ink))
+        cable = at.boxes[lane.of("cable-plane")[0].id]
+        if n == 0 and at.part_x - cable[0] > 80:
+            out.append(_text(cable[0] + 5, _TOP - 14, "cable plane", style.ink, anchor="middle"))
+        for s in lane.segments:
+            out.append(_segment(s, at.boxes[s.id], style, selected=s.id == selected, uid=uid))
+        out.append(_text(_LEFT, bottom + 17, _caption(lane), style.ink, more='font-style="italic"'))
+    out.append(_breaks(lane_map, at, style))
+    part = lane_map.part
+    out.append(_segment(part, at.boxes["part"], style, selected=selected == "part", uid=uid))
+    x, y, w, h = at.boxes["part"]
+    if part.state not in ("plain", "absent"):
+        out.append(_text(x + w, y + h + 18, f"{SHAPES[part.state]} {part.state_words}", style.ink, anchor="end"))
+    out.append(_axis(lane_map, at, style))
+    return (
+        f'<svg xmlns="http://www.w3.org/2000/svg" role="img" aria-label={quoteattr(lane_map.alt)} class="lanes" '
+        f'viewBox="0 0 {at.width:g} {at.height:g}" width="{at.width:g}" height="{at.height:g}" '
+        f'style="max-width:100%;height:auto" font-family="sans-serif" font-size="{TEXT}">{"".join(out)}</svg>'
+    )

@@ -1,0 +1,200 @@
+"""Curves over frequency: thinned to the pixels, labelled at their ends, bands shaded and named."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from matplotlib.artist import Artist
+from matplotlib.axes import Axes
+from numpy.typing import NDArray
+
+from deembed import words
+from deembed.plots_style import DASHES, MARKERS, Theme
+from deembed.views.model import Band, Picture, Trace
+from deembed.views.thin import thin
+
+__all__ = ["draw_lines", "frequency_unit"]
+
+_UNITS = ((1e9, "GHz"), (1e6, "MHz"), (1e3, "kHz"), (1.0, "Hz"))
+_MARKS = 7  # markers along a curve
+
+
+def frequency_unit(highest: float) -> tuple[float, str]:
+    """Scale [Hz] and unit for an axis that ends at a frequency [Hz]; GHz from 0.1 GHz up."""
+    return next(((scale, unit) for scale, unit in _UNITS if highest >= 0.1 * scale), _UNITS[-1])
+
+
+def draw_lines(
+    ax: Axes, picture: Picture, style: Theme, *, band: tuple[float, float] | None, cursor: float | None
+) -> list[Artist]:
+    """Draw curves over frequency; see `deembed.plots.draw`."""
+    low, high = band if band else picture.span
+    if high <= low:
+        low, high = low - max(0.01 * low, 0.5), high + max(0.01 * high, 0.5)
+    scale, unit = frequency_unit(high)
+    pixels = max(int(ax.figure.get_figwidth() * 96), 200)
+    curves, shown = [], []
+    for k, t in enumerate(picture.traces):
+        x, y = _seen(t, low, high, pixels)
+        curves.append(_curve(ax, t, k, x / scale, y, style))
+        inside = (x >= low) & (x <= high)
+        shown.append(y[inside])
+    ax.set_xlim(low / scale, high / scale)
+    bottom, top = _y_range(picture, shown)
+    ax.set_ylim(bottom, top)
+    ax.set_xlabel(f"{picture.x_label} ({unit})", color=style.ink, fontsize=style.text_pt)
+    ax.set_ylabel(picture.y_label, color=style.ink, fontsize=style.text_pt)
+    ax.grid(True, color=style.faint, linewidth=0.6, alpha=0.6)
+    ax.set_axisbelow(True)
+    more = _limits(ax, picture, style) + _bands(ax, picture.bands, style, low, high, scale)
+    more += _labels(ax, picture.traces, curves, style)
+    if cursor is not None:
+        more += _cursor(ax, picture, cursor, scale, style)
+    return [*curves, *more]
+
+
+def _seen(t: Trace, low: float, high: float, pixels: int) -> tuple[NDArray, NDArray]:
+    """Points in the band and one beyond on each side, thinned; gaps where a cyclic value jumps."""
+    start = max(int(np.searchsorted(t.x, low)) - 1, 0)
+    stop = min(int(np.searchsorted(t.x, high, side="right")) + 1, t.x.size)
+    x, y = t.x[start:stop], t.y[start:stop]
+    keep = thin(x, y, pixels=pixels)
+    x, y = x[keep], y[keep]
+    if t.wraps and y.size > 1:
+        jump = np.flatnonzero(np.abs(np.diff(y)) > 180) + 1
+        x, y = np.insert(x, jump, x[jump]), np.insert(y, jump, np.nan)
+    return x, y
+
+
+def _curve(ax: Axes, t: Trace, number: int, x: NDArray, y: NDArray, style: Theme) -> Artist:
+    step = max(x.size // _MARKS, 1)
+    (line,) = ax.plot(
+        x,
+        y,
+        color=style.hue(t.hue),
+        linestyle=DASHES[t.dash % len(DASHES)],
+        linewidth=1.7,
+        marker=MARKERS[t.hue % len(MARKERS)],
+        markersize=5.5,
+        markerfacecolor="none" if t.dash else style.hue(t.hue),
+        markevery=(min(number * step // 5, x.size - 1), step) if x.size > _MARKS else 1,
+        label=t.name,
+    )
+    return line
+
+
+def _y_range(picture: Picture, shown: Sequence[NDArray]) -> tuple[float, float]:
+    values = np.concatenate([np.empty(0), *shown])
+    values = values[np.isfinite(values)]
+    values = np.concatenate([values, [m.value for m in picture.limits]])
+    if not values.size:
+        return 0.0, 1.0
+    bottom, top = float(values.min()), float(values.max())
+    if picture.y_floor is not None:
+        bottom = min(bottom, picture.y_floor)
+    room = 0.06 * (top - bottom) or 0.05 * abs(top) or 1.0
+    return (bottom if bottom == picture.y_floor else bottom - room), top + room * (1 + 1.4 * bool(picture.bands))
+
+
+def _limits(ax: Axes, picture: Picture, style: Theme) -> list[Artist]:
+    out: list[Artist] = []
+    for limit in picture.limits:
+        out.append(ax.axhline(limit.value, color=style.ink, linewidth=1.4, linestyle=(0, (12, 4))))
+        out.append(
+            ax.annotate(
+                f"{limit.words} {limit.value:g}", (0.0, limit.value), xycoords=("axes fraction", "data"),
+                xytext=(6, 3), textcoords="offset points", color=style.ink, fontsize=style.text_pt,
+            )
+        )  # fmt: skip
+    return out
+
+
+def _bands(ax: Axes, bands: Sequence[Band], style: Theme, low: float, high: float, scale: float) -> list[Artist]:
+    """Shade the bands that reach into view; the words of overlapping ones stand below one another."""
+    out: list[Artist] = []
+    rows: list[float] = []
+    least = 0.004 * (high - low)
+    for b in sorted(bands, key=lambda b: (b.from_hz, -b.to_hz)):
+        if b.to_hz < low or b.from_hz > high:
+            continue
+        left, right = max(b.from_hz, low), min(b.to_hz, high)
+        if right - left < least:
+            middle = (left + right) / 2
+            left, right = middle - least / 2, middle + least / 2
+        strong = b.severity == "contradiction"
+        out.append(
+            ax.axvspan(left / scale, right / scale, color=style.shade_strong if strong else style.shade, zorder=0.3)
+        )
+        row = next((i for i, end in enumerate(rows) if end <= left), len(rows))
+        rows[row:row + 1] = [max(right, left + 0.022 * len(b.word) * (high - low))]  # fmt: skip
+        if row < 4:
+            near_end = (left - low) / (high - low) > 0.75
+            out.append(
+                ax.annotate(
+                    b.word, ((right if near_end else left) / scale, 1.0), xycoords=("data", "axes fraction"),
+                    xytext=(-4 if near_end else 4, -4 - 13 * row), textcoords="offset points", va="top",
+                    ha="right" if near_end else "left", color=style.ink, fontsize=style.text_pt, style="italic",
+                )
+            )  # fmt: skip
+    return out
+
+
+def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: Theme) -> list[Artist]:
+    """Names at the right ends of the curves, spread so that none covers another, each tied to its end."""
+    low, high = ax.get_ylim()
+    height = max(ax.figure.get_figheight() * 72 - 80, 60)  # points the axes have, roughly: layout comes later
+    unit = (high - low) / height
+    ends = []
+    for t, line in zip(traces, curves, strict=True):
+        x, y = line.get_data()  # type: ignore[attr-defined]
+        inside = np.flatnonzero(np.isfinite(y) & (x <= ax.get_xlim()[1] * (1 + 1e-12)))
+        if inside.size:
+            ends.append((float(np.clip(y[inside[-1]], low, high)), float(x[inside[-1]]), t))
+    ends.sort(key=lambda e: e[0])
+    gap = (style.text_pt + 3) * unit
+    spots = _spread([e[0] for e in ends], gap, low, high)
+    right = ax.get_xlim()[1]
+    out: list[Artist] = []
+    for (y, x, t), spot in zip(ends, spots, strict=True):
+        out.append(
+            ax.annotate(
+                t.name, (min(x, right), y), xytext=(1.045, (spot - low) / (high - low)),
+                textcoords="axes fraction", va="center", ha="left", color=style.ink, fontsize=style.text_pt,
+                annotation_clip=False,
+                arrowprops={
+                    "arrowstyle": "-", "color": style.hue(t.hue), "linewidth": 1.7,
+                    "linestyle": DASHES[t.dash % len(DASHES)], "shrinkA": 0, "shrinkB": 0, "relpos": (0, 0.5),
+                },
+            )
+        )  # fmt: skip
+    return out
+
+
+def _spread(wanted: Sequence[float], gap: float, low: float, high: float) -> list[float]:
+    """Places near the wanted ones (rising), at least a gap apart, inside the axes while there is room."""
+    spots = list(wanted)
+    for i in range(1, len(spots)):
+        spots[i] = max(spots[i], spots[i - 1] + gap)
+    over = spots[-1] - high if spots else 0.0
+    if over > 0:
+        spots[-1] -= over
+        for i in range(len(spots) - 2, -1, -1):
+            spots[i] = min(spots[i], spots[i + 1] - gap)
+    return spots
+
+
+def _cursor(ax: Axes, picture: Picture, cursor: float, scale: float, style: Theme) -> list[Artist]:
+    out: list[Artist] = [ax.axvline(cursor / scale, color=style.ink, linewidth=1.2)]
+    for t, r in zip(picture.traces, picture.at(cursor), strict=True):
+        out += ax.plot(
+            [r.frequency / scale], [r.value], linestyle="none", marker="o", markersize=9, markerfacecolor="none",
+            markeredgecolor=style.hue(t.hue), markeredgewidth=2,
+        )  # fmt: skip
+    out.append(
+        ax.annotate(
+            words.frequency(cursor), (cursor / scale, 0.0), xycoords=("data", "axes fraction"), xytext=(4, 4),
+            textcoords="offset points", color=style.ink, fontsize=style.text_pt, fontweight="bold",
+        )
+    )  # fmt: skip
+    return out
