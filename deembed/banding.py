@@ -13,7 +13,9 @@ from deembed.findings import Finding, bands_over, finding_id
 __all__ = ["at_band", "banded_findings", "over_leading", "worst_of"]
 
 # More bands than this for one thing in one place help nobody: neighbours further apart are then merged.
-_MOST_BANDS = 4
+_MOST_BANDS = 2
+# A merged band is said to be patchy when fewer of its points than this count.
+_PATCHY = 0.9
 _GAPS = (0.02, 0.05, 0.1, 0.2, 1.0)
 
 
@@ -38,6 +40,14 @@ def worst_of(sizes: dict[str, int]) -> str:
     if not sizes:
         return ""
     return f" (worst of {words.listed(f'{n} along {dim}' for dim, n in sizes.items())})"
+
+
+def _worst_at(hz: float, over: NDArray) -> str:
+    """Where the worst is, and how much of a merged band counts at all."""
+    if over.size == 1:
+        return ""
+    patchy = f", seen at {words.percent(over.mean())} of the points" if over.mean() < _PATCHY else ""
+    return f" (worst at {words.frequency(hz)}{patchy})"
 
 
 def banded_findings(
@@ -71,7 +81,7 @@ def banded_findings(
     Returns
     -------
     list of Finding
-        Bands merged until four at most are left.
+        Bands merged until two at most are left.
     """
     merged = (bands_over(frequency, over, gap=gap) for gap in _GAPS)
     bands = next(b for b in merged if len(b) <= _MOST_BANDS)
@@ -83,7 +93,7 @@ def banded_findings(
         text = sentence.format(
             start=at_band(f0, f1),
             worst=say(float(size[worst])),
-            at=f" (worst at {words.frequency(at)})" if j > i else "",
+            at=_worst_at(at, over[i : j + 1]),
         )
         place = finding_id(kind, where, number)
         found.append(Finding(place, kind, where, severity, text, f0, f1, float(size[worst]), at))

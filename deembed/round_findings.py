@@ -125,26 +125,48 @@ def unsolved_findings(
 
 
 def disagreement_findings(disagreement: xr.DataArray, limit: float) -> list[Finding]:
-    """One warning per round, part port and band in which a reflection is not what other rounds read."""
+    """One warning per part port, round and band in which a reflection is not what other rounds read.
+
+    Where only two rounds read a port both are equally far from their mean: one warning names both.
+    """
     found = []
-    f = disagreement.frequency.values
     outer = {str(d): n for d, n in disagreement.sizes.items() if d not in ("round", "frequency", "port")}
-    for k, label in enumerate(disagreement["round"].values):
-        for port in disagreement.port.values:
-            values = disagreement.isel(round=k).sel(port=port).transpose(..., "frequency").values
-            size = over_leading(np.abs(values), keep=1)
-            found += banded_findings(
-                f,
-                size,
-                size > limit,
-                kind="disagreement",
-                where=f"round {label}, part port {port}",
-                severity="warning",
-                sentence=f"{{start}} the reflection of part port {port} read in round {label} is by a "
-                "wave amplitude of up to {worst} off the mean of its readings{at}" + worst_of(outer) + "; a "
-                "round, its connections or a termination is not what the job says.",
-            )
+    for port in disagreement.port.values:
+        values = np.abs(disagreement.sel(port=port).transpose("round", ..., "frequency").values)
+        sizes = {
+            str(label): over_leading(v, keep=1)
+            for label, v in zip(disagreement["round"].values, values, strict=True)
+            if not np.isnan(v).all()
+        }
+        first, *others = sizes.values() or [np.array([])]
+        if len(others) == 1 and np.allclose(first, others[0], rtol=1e-6, atol=1e-12, equal_nan=True):
+            found += _disagreement(disagreement, first, limit, outer, list(sizes), port)
+            continue
+        for label, size in sizes.items():
+            found += _disagreement(disagreement, size, limit, outer, [label], port)
     return found
+
+
+def _disagreement(
+    disagreement: xr.DataArray,
+    size: NDArray,
+    limit: float,
+    outer: dict[str, int],
+    labels: Sequence[str],
+    port: int,
+) -> list[Finding]:
+    read = f"read in {'rounds' if len(labels) > 1 else 'round'} {words.listed(labels)}"
+    return banded_findings(
+        disagreement.frequency.values,
+        size,
+        size > limit,
+        kind="disagreement",
+        where=", ".join([*(f"round {label}" for label in labels), f"part port {port}"]),
+        severity="warning",
+        sentence=f"{{start}} the reflection of part port {port} {read} is off the mean of its readings by a
+        wave amplitude of up to {worst}{at}" + worst_of(outer) + "; a round, its " "connections or a
+        termination is not what the job says.",
+    )
 
 
 def repeat_findings(
@@ -165,6 +187,6 @@ def repeat_findings(
                 severity="warning",
                 sentence=f"{{start}} the transmission between part ports {ports[i]} and {ports[j]} read in "
                 f"{name} "
-                "is by a wave amplitude of up to {worst} off what all rounds together say{at}.",
+                "is off what all rounds together say by a wave amplitude of up to {worst}{at}.",
             )
     return found

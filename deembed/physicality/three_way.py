@@ -121,7 +121,7 @@ def _where_true(f: NDArray, mask: NDArray, judged: NDArray) -> str:
 
 
 def _least_loss(metrics: xr.Dataset) -> list[Finding]:
-    """The dissipation floor where it is highest, among the points at which the part shows itself reciprocal."""
+    """The dissipation floor where it is highest, among the points at which the part shows as reciprocal."""
     f = metrics.frequency.values
     reciprocal = metrics.holds.sel(property="reciprocal").transpose(..., "frequency").values
     floor = metrics.dissipation_floor.transpose(..., "frequency").values
@@ -135,9 +135,9 @@ def _least_loss(metrics: xr.Dataset) -> list[Finding]:
     shown = f"lose {words.percent(least)}" if least >= 0 else f"gain {words.percent(-least)}"
     reflections = float(np.nanmin(metrics.reflection_sum.transpose(..., "frequency").values[..., k]))
     text = (
-        f"At {words.frequency(f[k])} the three reflections add up to {reflections:.2g}: a passive reciprocal part "
-        f"so well matched must lose at least {words.percent(floor[k])} of the power inside, averaged over its "
-        f"ports; these readings {shown}{_spread(metrics)}."
+        f"At {words.frequency(f[k])} the three reflections add up to {reflections:.2g}: a passive, "
+        f"reciprocal part so matched must lose at least {words.percent(floor[k])} of the power inside, "
+        f"averaged over its ports; these readings {shown}{_spread(metrics)}."
     )
     f0, f1, at = float(f[band[0]]), float(f[band[-1]]), float(f[k])
     kind = "dissipation-floor"

@@ -116,16 +116,16 @@ def _reason(finding: Finding) -> str:
 
 
 def _places(warnings: Sequence[Finding]) -> str:
-    """Kinds and places of the warnings, each place once."""
-    by_kind: dict[str, list[str]] = {}
+    """Kinds and places of the warnings, each place once with all it spans."""
+    spans: dict[str, dict[str, list[float]]] = {}
     for finding in warnings:
-        places = by_kind.setdefault(finding.kind, [])
-        place = finding.where or "the part"
-        if finding.from_hz is not None and finding.to_hz is not None:
-            place += f" ({words.band(finding.from_hz, finding.to_hz)})"
-        if place not in places:
-            places.append(place)
-    return words.listed(f"{_plain(kind)} at {_few(places)}" for kind, places in by_kind.items())
+        ends = spans.setdefault(finding.kind, {}).setdefault(finding.where or "the part", [])
+        ends += [hz for hz in (finding.from_hz, finding.to_hz) if hz is not None]
+    said = []
+    for kind, by_place in spans.items():
+        places = [f"{p} ({words.band(min(ends), max(ends))})" if ends else p for p, ends in by_place.items()]
+        said.append(f"{_plain(kind)} at {_few(places)}")
+    return "; ".join(said)
 
 
 def _plain(kind: str) -> str:
