@@ -163,9 +163,10 @@ def _disagreement(
         kind="disagreement",
         where=", ".join([*(f"round {label}" for label in labels), f"part port {port}"]),
         severity="warning",
-        sentence=f"{{start}} the reflection of part port {port} {read} is off the mean of its readings by a
-        wave amplitude of up to {worst}{at}" + worst_of(outer) + "; a round, its " "connections or a
-        termination is not what the job says.",
+        sentence=f"{{start}} the reflection of part port {port} {read} is off the mean of its readings "
+        "by a wave amplitude of up to {worst}{at}"
+        + worst_of(outer)
+        + "; a round, its connections or a termination is not what the job says.",
     )
 
 
