@@ -113,10 +113,22 @@ def figure(
     -------
     Figure
     """
-    fig = Figure(figsize=(width / _DPI, height / _DPI), dpi=_DPI, layout="constrained")
-    fig.patch.set_alpha(0.0)
-    draw(picture, fig.add_subplot(), band=band, cursor=cursor, theme=theme, admittance=admittance)
+    fig = Figure(figsize=(width / _DPI, height / _DPI), dpi=_DPI)
+    fig.patch.set_facecolor(theme_of(theme).sheet)
+    ax = fig.add_axes(_frame(picture, width, height))
+    draw(picture, ax, band=band, cursor=cursor, theme=theme, admittance=admittance)
     return fig
+
+
+def _frame(picture: Picture, width: float, height: float) -> tuple[float, float, float, float]:
+    """Room for the axes: fixed margins, so that pictures below one another line up, and the longest label."""
+    left, top, bottom = 88.0, 36.0, 54.0
+    longest = max((len(t.name) for t in picture.traces), default=0)
+    right = 34 + 8.8 * longest
+    if picture.kind == "reflection":
+        left, right, bottom = 8.0, 8.0, 34.0
+    wide, tall = max(width - left - right, 80.0), max(height - top - bottom, 80.0)
+    return left / width, bottom / height, wide / width, tall / height
 
 
 _ESCAPES = {"&": "&amp;", "<": "&lt;", ">": "&gt;", '"': "&quot;"}
@@ -136,7 +148,7 @@ def svg(
     theme: str = "light",
     admittance: bool = False,
 ) -> str:
-    """A picture as inline SVG: transparent, readable in its theme, with the picture's words as label.
+    """A picture as inline SVG, readable on a light or dark page, with the picture's words as label.
 
     Parameters
     ----------
@@ -157,7 +169,7 @@ def svg(
     sink = io.StringIO()
     quiet: Any = dict.fromkeys(("Date", "Creator", "Format", "Type"))
     with rc_context({"svg.hashsalt": picture.name, "svg.fonttype": "none", "path.simplify": True}):
-        fig.savefig(sink, format="svg", metadata=quiet, transparent=True)
+        fig.savefig(sink, format="svg", metadata=quiet)
     return _inline(sink.getvalue(), picture, width=width, height=height)
 
 
@@ -170,7 +182,7 @@ def _inline(text: str, picture: Picture, *, width: float, height: float) -> str:
     inner = re.sub(r'\bid="([^"]+)"', rf'id="{slug}-\1"', inner)
     inner = re.sub(r"url\(#([^)]+)\)", rf"url(#{slug}-\1)", inner)
     inner = re.sub(r'xlink:href="#([^"]+)"', rf'xlink:href="#{slug}-\1"', inner)
-    inner = re.sub(r"(\d+\.\d\d)\d+", r"\1", inner)
+    inner = re.sub(r"<[^>]+>", lambda tag: re.sub(r"(\d+\.\d\d)\d+", r"\1", tag[0]), inner)
     inner = re.sub(r"<style type=\"text/css\">.*?</style>", "", inner, flags=re.DOTALL)
     inner = re.sub(r"\s*\n\s*", " ", inner)
     box = view[1] if view else f"0 0 {width * 0.75:g} {height * 0.75:g}"
@@ -181,7 +193,9 @@ def _inline(text: str, picture: Picture, *, width: float, height: float) -> str:
     ).strip()
 
 
-def lane_map_svg(lane_map: LaneMap, *, selected: str | None = None, width: float = 960, theme: str = "light") -> str:
+def lane_map_svg(
+    lane_map: LaneMap, *, selected: str | None = None, width: float = 960, theme: str = "light"
+) -> str:
     """The lane map as inline SVG; every segment is a group with ``data-segment`` and its id.
 
     Parameters
@@ -205,6 +219,4 @@ def lane_map_svg(lane_map: LaneMap, *, selected: str | None = None, width: float
     """
     from deembed.plots_lanes import lanes_svg
 
-    return lanes_svg(lane_map, selected=selected, width=width, style=theme_of(theme))
-
-
+    return lanes_svg(lane_map, selected=selected, width=width, style=theme_of(theme, lanes=True))

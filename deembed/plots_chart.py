@@ -31,7 +31,9 @@ def chart_grid(*, points: int = 181) -> tuple[np.ndarray, ...]:
     tuple of complex arrays of shape (points,)
         Reflections (z - 1) / (z + 1); all lie inside the unit circle. Textbook conformal map.
     """
-    turn = np.tan(np.linspace(-0.5, 0.5, points)[1:-1] * np.pi)  # every reactance, evenly spread over the circle
+    turn = np.tan(
+        np.linspace(-0.5, 0.5, points)[1:-1] * np.pi
+    )  # every reactance, evenly spread over the circle
     curves = [r + 1j * turn for r in _LEVELS]
     real = np.tan(np.linspace(0, 0.5, points)[:-1] * np.pi)
     curves += [real + 1j * x * sign for x in _LEVELS for sign in (1, -1)]
@@ -47,11 +49,15 @@ def _grid(ax: Axes, style: Theme, *, admittance: bool) -> list[Artist]:
     lines = LineCollection(segments, colors=style.faint, linewidths=0.7, zorder=0.5)
     out.append(ax.add_collection(lines))
     if admittance:
-        turned = LineCollection([-s for s in segments], colors=style.faint, linewidths=0.7, linestyles="dotted")
+        turned = LineCollection(
+            [-s for s in segments], colors=style.faint, linewidths=0.7, linestyles="dotted"
+        )
         out.append(ax.add_collection(turned))
     for level in _LEVELS:
         at = (level - 1) / (level + 1)
-        out.append(ax.text(at, 0.015, f"{level:g}", color=style.ink, fontsize=style.text_pt, ha="left", va="bottom"))
+        out.append(
+            ax.text(at, 0.015, f"{level:g}", color=style.ink, fontsize=style.text_pt, ha="left", va="bottom")
+        )
         edge = (1j * level - 1) / (1j * level + 1)
         for sign in (1, -1):
             place = edge.real + 1j * sign * edge.imag

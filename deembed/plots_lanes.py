@@ -13,7 +13,7 @@ __all__ = ["Layout", "lanes_svg", "layout_of", "segment_boxes"]
 
 TEXT = 15  # px, 11.25 pt
 _ROW, _TALL, _CAPTION, _GAP, _TOP = 34, 24, 22, 22, 34
-_LEFT, _TAB = 128, 46  # words of the lane, then the analyzer port's tab
+_LEFT, _TAB = 112, 78  # words of the lane, then the analyzer port's tab
 _BREAK_RATIO = 3.5  # error boxes longer than this many arms are drawn short
 SHAPES = {"plain": "", "note": "◇", "warning": "◈", "contradiction": "◆", "absent": ""}
 
@@ -81,7 +81,9 @@ def layout_of(lane_map: LaneMap, *, width: float = 960) -> Layout:
         y = bottom + _CAPTION + _GAP
     bottom = y - _GAP
     boxes["part"] = (part_x + 70, _TOP, 104, bottom - _CAPTION - _TOP)
-    arm_start = min([part_x + scale * s.from_ps for lane in lane_map.lanes for s in lane.of("arm")] or [part_x])
+    arm_start = min(
+        [part_x + scale * s.from_ps for lane in lane_map.lanes for s in lane.of("arm")] or [part_x]
+    )
     return Layout(width, bottom + 58, part_x, scale, arm_start - 24 if broken else 0.0, boxes, rows)
 
 
@@ -152,10 +154,13 @@ def _short_words(s: Segment, room: float) -> str:
         told = ("corrected before", "")
     if s.kind == "arm" and s.state == "absent":
         told = ("",)
-    return next((t for t in told if 8.2 * len(t) + 8 <= room), "")
+    shape = f"{SHAPES[s.state]} " if SHAPES[s.state] else ""
+    return next((shape + t for t in told if t and 8.2 * len(shape + t) + 8 <= room), "")
 
 
-def _segment(s: Segment, box: tuple[float, float, float, float], style: Theme, *, selected: bool, uid: str) -> str:
+def _segment(
+    s: Segment, box: tuple[float, float, float, float], style: Theme, *, selected: bool, uid: str
+) -> str:
     x, y, w, h = box
     fill = {"contradiction": f"url(#{uid}-hatch)", "warning": style.shade_strong}.get(s.state, style.paper)
     fill = "none" if s.state == "absent" else fill
@@ -175,7 +180,9 @@ def _segment(s: Segment, box: tuple[float, float, float, float], style: Theme, *
             f'stroke-width="{wide}"/>'
         )
     elif w > 0:
-        body.append(f'<path d="{_outline(s, box)}" fill="{fill}" stroke="{style.ink}" stroke-width="{wide}"{dash}/>')
+        body.append(
+            f'<path d="{_outline(s, box)}" fill="{fill}" stroke="{style.ink}" stroke-width="{wide}"{dash}/>'
+        )
     if label and s.state == "contradiction":
         pill = 8.2 * len(label) + 6
         body.append(
@@ -190,6 +197,8 @@ def _segment(s: Segment, box: tuple[float, float, float, float], style: Theme, *
             f'<rect x="{x - 4:.1f}" y="{y - 4:.1f}" width="{w + 8:.1f}" height="{h + 8:.1f}" rx="4" fill="none" '
             f'stroke="{style.hues[0]}" stroke-width="2.5" stroke-dasharray="2 3"/>'
         )
+    if SHAPES[s.state] and SHAPES[s.state] not in label:
+        body.append(_text(x + w / 2, y - 3, SHAPES[s.state], style.ink, anchor="middle"))
     chosen = ' data-chosen="yes"' if selected else ""
     return f'<g class="segment" data-segment={quoteattr(s.id)} data-state="{s.state}"{chosen}>{"".join(body)}</g>'
 
@@ -227,7 +236,7 @@ def _axis(lane_map: LaneMap, at: Layout, style: Theme) -> str:
         out.append(_text(x, y + 21, f"{t:g}", style.ink, anchor="middle"))
     words = "electrical distance from the part plane (ps)"
     if at.broken_at:
-        out.append(_text(_LEFT + _TAB, y + 5, "not to scale left of the break", style.ink))
+        out.append(_text(8, y + 40, "error boxes are cut short at the slanted strokes", style.ink))
     out.append(_text(at.part_x, y + 40, words, style.ink, anchor="end"))
     return "".join(out)
 
@@ -275,14 +284,16 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
         f'<line x1="{at.part_x:.1f}" x2="{at.part_x:.1f}" y1="{_TOP - 10}" y2="{foot:.1f}" stroke="{style.ink}" '
         f'stroke-width="1.4" stroke-dasharray="10 3"/>'
     )
-    out.append(_text(at.part_x, _TOP - 14, "part plane", style.ink, anchor="middle"))
+    out.append(_text(at.part_x + 2, _TOP - 14, "part plane", style.ink, anchor="end"))
+    out.append(_text(at.part_x + 10, _TOP - 14, "part port", style.ink))
+    out.append(_text(_LEFT, _TOP - 14, "analyzer", style.ink))
     for n, lane in enumerate(lane_map.lanes):
         top, middle, bottom = at.rows[lane.part_port]
         out.append(_wires(lane, at, style))
         for k, s in enumerate(lane.of("analyzer-port")):
             out.append(_text(8, top + k * _ROW + _ROW / 2 + 5, f"round {s.round_label}", style.ink))
         cable = at.boxes[lane.of("cable-plane")[0].id]
-        if n == 0 and at.part_x - cable[0] > 80:
+        if n == 0 and at.part_x - cable[0] > 130:
             out.append(_text(cable[0] + 5, _TOP - 14, "cable plane", style.ink, anchor="middle"))
         for s in lane.segments:
             out.append(_segment(s, at.boxes[s.id], style, selected=s.id == selected, uid=uid))
@@ -292,7 +303,9 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
     out.append(_segment(part, at.boxes["part"], style, selected=selected == "part", uid=uid))
     x, y, w, h = at.boxes["part"]
     if part.state not in ("plain", "absent"):
-        out.append(_text(x + w, y + h + 18, f"{SHAPES[part.state]} {part.state_words}", style.ink, anchor="end"))
+        out.append(
+            _text(x + w, y + h + 18, f"{SHAPES[part.state]} {part.state_words}", style.ink, anchor="end")
+        )
     out.append(_axis(lane_map, at, style))
     return (
         f'<svg xmlns="http://www.w3.org/2000/svg" role="img" aria-label={quoteattr(lane_map.alt)} class="lanes" '

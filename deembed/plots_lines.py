@@ -7,6 +7,7 @@ from collections.abc import Sequence
 import numpy as np
 from matplotlib.artist import Artist
 from matplotlib.axes import Axes
+from matplotlib.ticker import MultipleLocator
 from numpy.typing import NDArray
 
 from deembed import words
@@ -47,6 +48,8 @@ def draw_lines(
     ax.set_ylabel(picture.y_label, color=style.ink, fontsize=style.text_pt)
     ax.grid(True, color=style.faint, linewidth=0.6, alpha=0.6)
     ax.set_axisbelow(True)
+    if picture.unit == "degrees" and top - bottom > 180:
+        ax.yaxis.set_major_locator(MultipleLocator(90))
     more = _limits(ax, picture, style) + _bands(ax, picture.bands, style, low, high, scale)
     more += _labels(ax, picture.traces, curves, style)
     if cursor is not None:
@@ -93,8 +96,14 @@ def _y_range(picture: Picture, shown: Sequence[NDArray]) -> tuple[float, float]:
     bottom, top = float(values.min()), float(values.max())
     if picture.y_floor is not None:
         bottom = min(bottom, picture.y_floor)
-    room = 0.06 * (top - bottom) or 0.05 * abs(top) or 1.0
-    return (bottom if bottom == picture.y_floor else bottom - room), top + room * (1 + 1.4 * bool(picture.bands))
+    least = {"dB": 0.5, "degrees": 5.0, "ps": 5.0}.get(picture.unit, 1e-9)  # rounding noise is no curve
+    if top - bottom < least:
+        middle = (top + bottom) / 2
+        bottom, top = middle - least / 2, middle + least / 2
+    room = 0.06 * (top - bottom)
+    return (bottom if bottom == picture.y_floor else bottom - room), top + room * (
+        1 + 1.4 * bool(picture.bands)
+    )
 
 
 def _limits(ax: Axes, picture: Picture, style: Theme) -> list[Artist]:
@@ -110,7 +119,9 @@ def _limits(ax: Axes, picture: Picture, style: Theme) -> list[Artist]:
     return out
 
 
-def _bands(ax: Axes, bands: Sequence[Band], style: Theme, low: float, high: float, scale: float) -> list[Artist]:
+def _bands(
+    ax: Axes, bands: Sequence[Band], style: Theme, low: float, high: float, scale: float
+) -> list[Artist]:
     """Shade the bands that reach into view; the words of overlapping ones stand below one another."""
     out: list[Artist] = []
     rows: list[float] = []
@@ -124,7 +135,9 @@ def _bands(ax: Axes, bands: Sequence[Band], style: Theme, low: float, high: floa
             left, right = middle - least / 2, middle + least / 2
         strong = b.severity == "contradiction"
         out.append(
-            ax.axvspan(left / scale, right / scale, color=style.shade_strong if strong else style.shade, zorder=0.3)
+            ax.axvspan(
+                left / scale, right / scale, color=style.shade_strong if strong else style.shade, zorder=0.3
+            )
         )
         row = next((i for i, end in enumerate(rows) if end <= left), len(rows))
         rows[row:row + 1] = [max(right, left + 0.022 * len(b.word) * (high - low))]  # fmt: skip
@@ -143,7 +156,7 @@ def _bands(ax: Axes, bands: Sequence[Band], style: Theme, low: float, high: floa
 def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: Theme) -> list[Artist]:
     """Names at the right ends of the curves, spread so that none covers another, each tied to its end."""
     low, high = ax.get_ylim()
-    height = max(ax.figure.get_figheight() * 72 - 80, 60)  # points the axes have, roughly: layout comes later
+    height = max(ax.get_position().height * ax.figure.get_figheight() * 72, 60)  # points
     unit = (high - low) / height
     ends = []
     for t, line in zip(traces, curves, strict=True):
@@ -151,15 +164,16 @@ def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: 
         inside = np.flatnonzero(np.isfinite(y) & (x <= ax.get_xlim()[1] * (1 + 1e-12)))
         if inside.size:
             ends.append((float(np.clip(y[inside[-1]], low, high)), float(x[inside[-1]]), t))
-    ends.sort(key=lambda e: e[0])
+    ends = sorted(reversed(ends), key=lambda e: round((e[0] - low) / unit))  # first of equals on top
     gap = (style.text_pt + 3) * unit
     spots = _spread([e[0] for e in ends], gap, low, high)
     right = ax.get_xlim()[1]
+    across = ax.get_position().width * ax.figure.get_figwidth() * 72
     out: list[Artist] = []
     for (y, x, t), spot in zip(ends, spots, strict=True):
         out.append(
             ax.annotate(
-                t.name, (min(x, right), y), xytext=(1.045, (spot - low) / (high - low)),
+                t.name, (min(x, right), y), xytext=(1 + 17 / across, (spot - low) / (high - low)),
                 textcoords="axes fraction", va="center", ha="left", color=style.ink, fontsize=style.text_pt,
                 annotation_clip=False,
                 arrowprops={
@@ -172,15 +186,24 @@ def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: 
 
 
 def _spread(wanted: Sequence[float], gap: float, low: float, high: float) -> list[float]:
-    """Places near the wanted ones (rising), at least a gap apart, inside the axes while there is room."""
-    spots = list(wanted)
-    for i in range(1, len(spots)):
-        spots[i] = max(spots[i], spots[i - 1] + gap)
-    over = spots[-1] - high if spots else 0.0
-    if over > 0:
-        spots[-1] -= over
-        for i in range(len(spots) - 2, -1, -1):
-            spots[i] = min(spots[i], spots[i + 1] - gap)
+    """Places for labels wanted at rising values: at least a gap apart, each group centred on what it names.
+
+    Notes
+    -----
+    Pool adjacent violators: groups that would overlap become one, placed at its mean.
+    """
+    groups: list[tuple[float, int]] = []  # mean of (wanted - index * gap), members
+    for i, value in enumerate(wanted):
+        mean, size = value - i * gap, 1
+        while groups and groups[-1][0] > mean:
+            other, more = groups.pop()
+            mean, size = (mean * size + other * more) / (size + more), size + more
+        groups.append((mean, size))
+    top = high - (len(wanted) - 1) * gap
+    spots: list[float] = []
+    for mean, size in groups:
+        start = min(max(mean, low), max(top, low)) if top > low else top
+        spots += [start + (len(spots) + k) * gap for k in range(size)]
     return spots
 
 

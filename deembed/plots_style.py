@@ -8,9 +8,15 @@ from deembed.errors import DeembedError
 
 __all__ = ["DASHES", "MARKERS", "THEMES", "Theme", "theme_of"]
 
-# Okabe & Ito (2008): black, orange, sky blue, bluish green, yellow, blue, vermillion, reddish purple.
-_BLUE, _VERMILLION, _PURPLE, _ORANGE, _SKY, _GREEN = "#0072B2", "#D55E00", "#CC79A7", "#E69F00", "#56B4E9", "#009E73"
-_YELLOW = "#F0E442"
+# Okabe & Ito (2008), without its yellow, which no white paper shows.
+_BLUE, _VERMILLION, _PURPLE, _ORANGE, _SKY, _GREEN = (
+    "#0072B2",
+    "#D55E00",
+    "#CC79A7",
+    "#E69F00",
+    "#56B4E9",
+    "#009E73",
+)
 
 DASHES: tuple[tuple[float, tuple[float, ...]] | str, ...] = (
     "solid",
@@ -24,7 +30,7 @@ MARKERS = ("o", "s", "^", "D", "v", "P", "X")
 
 @dataclass(frozen=True)
 class Theme:
-    """Inks of one theme."""
+    """Inks of one theme; `sheet` is what pictures stand on, ``none`` where the page itself will do."""
 
     name: str
     paper: str
@@ -32,6 +38,7 @@ class Theme:
     faint: str
     shade: str
     shade_strong: str
+    sheet: str
     hues: tuple[str, ...]
     text_pt: float = 11.0
 
@@ -40,20 +47,21 @@ class Theme:
         return self.hues[number % len(self.hues)]
 
 
+_ON_PAPER = (_BLUE, _VERMILLION, "#000000", _PURPLE, _ORANGE, _SKY, _GREEN)
+
 THEMES = {
-    "light": Theme(
-        "light", "#ffffff", "#1b1b1b", "#c9c9c9", "#e9e6df", "#f6dcc3",
-        (_BLUE, _VERMILLION, "#000000", _PURPLE, _ORANGE, _SKY, _GREEN),
-    ),
-    "dark": Theme(
-        "dark", "#1e1e1e", "#ececec", "#5a5a5a", "#3a3833", "#54402c",
-        (_SKY, _ORANGE, "#ffffff", _PURPLE, _YELLOW, _VERMILLION, _GREEN),
-    ),
-}  # fmt: skip
+    "light": Theme("light", "#ffffff", "#1b1b1b", "#c9c9c9", "#e9e6df", "#f6dcc3", "none", _ON_PAPER),
+    # Pictures on a dark page stand on a dimmed sheet of their own: dark curves on paper, as everywhere else.
+    "dark": Theme("dark", "#d6d2c8", "#151515", "#a9a59b", "#c3beb2", "#e3b98e", "#d6d2c8", _ON_PAPER),
+}
+LANE_THEMES = {
+    "light": THEMES["light"],
+    "dark": Theme("dark", "#242424", "#ececec", "#5a5a5a", "#3a3833", "#5c4025", "none", (_SKY,)),
+}
 
 
-def theme_of(name: str) -> Theme:
-    """The theme of a name.
+def theme_of(name: str, *, lanes: bool = False) -> Theme:
+    """The theme of a name, for pictures or for the lane map.
 
     Raises
     ------
@@ -62,4 +70,4 @@ def theme_of(name: str) -> Theme:
     """
     if name not in THEMES:
         raise DeembedError(f"theme {name!r} is not one of {', '.join(THEMES)}", where="picture")
-    return THEMES[name]
+    return (LANE_THEMES if lanes else THEMES)[name]

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 from dataclasses import dataclass, replace
 from types import SimpleNamespace
 
@@ -87,6 +88,7 @@ def arm_files(f):
 
 def error_terms(f):
     """Terms of two boxes with known one-way delays."""
+
     def line(ps, size):
         return size * np.exp(-2j * np.pi * f * ps * 1e-12)
 
@@ -115,6 +117,22 @@ def error_terms(f):
     )
 
 
+class FakeJob:
+    """A job's tables, and its inputs with made-up hashes."""
+
+    def __init__(self, spec):
+        self.spec, self.name, self.inputs = spec, "job.toml", self
+
+    def input_names(self):
+        readings = [
+            (f"calibration.readings[{k}].file", r.file) for k, r in enumerate(self.spec.calibration.readings)
+        ]
+        return readings + [(f"rounds[{k}].file", r.file) for k, r in enumerate(self.spec.rounds)]
+
+    def get(self, name, *, key):
+        return SimpleNamespace(sha256=hashlib.sha256(name.encode()).hexdigest())
+
+
 def job():
     """The tables of a job file, as attributes."""
     n = SimpleNamespace
@@ -125,7 +143,7 @@ def job():
     readings = tuple(
         n(standard=s, ports=(p,), file=f"raw/{s}_{p}.s1p") for s in ("open", "short", "load") for p in (1, 2)
     ) + (n(standard="thru", ports=(1, 2), file="raw/thru.s2p"),)
-    return n(
+    return FakeJob(n(
         job=n(
             title="River-gauge splitter, board <B>", part_ports=3, reference_impedance_ohm=50.0, operator='A. "Ampere"',
             instrument="", kit_serial="", kit_due="", temperature_c="23", note="<script>alert(1)</script>",
@@ -138,7 +156,7 @@ def job():
             arms=tuple(n(part_port=p, file=f"fixture/arm_{p}.s2p", analyzer_side=1) for p in (1, 2, 3)), coupled=None
         ),
         expect=n(passive=True, reciprocal=True, lossless=None, tolerance=0.01),
-    )  # fmt: skip
+    ))  # fmt: skip
 
 
 FINDINGS = (

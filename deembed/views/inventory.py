@@ -76,7 +76,9 @@ def pictures(outcome: Any) -> Inventory:
         ``terms.port-<analyzer port>``, ``terms.redundancy``, ``terms.line-phase``, ``arm.<part port>``,
         ``arm.<part port>.delay``, ``fixture.coupling``, ``raw.<file>``; what does not apply is not there.
     """
-    return Inventory({**_part(outcome), **_rounds(outcome), **_terms(outcome), **_arms(outcome), **_raw(outcome)})
+    return Inventory(
+        {**_part(outcome), **_rounds(outcome), **_terms(outcome), **_arms(outcome), **_raw(outcome)}
+    )
 
 
 def _part(outcome: Any) -> dict[str, Callable[[], Picture]]:
@@ -107,7 +109,9 @@ def _rounds(outcome: Any) -> dict[str, Callable[[], Picture]]:
     labels = [str(r.name) for r in rounds]
     for port in (int(p) for p in outcome.part.port_out.values):
         if any(port in r.port_out.values for r in rounds):
-            makers[f"cable-plane.{port}"] = partial(readings.reflection_readings, rounds, port=port, labels=labels)
+            makers[f"cable-plane.{port}"] = partial(
+                readings.reflection_readings, rounds, port=port, labels=labels
+            )
     if outcome.disagreement is not None:
         bands = _of_kind(tuple(outcome.findings), "disagree")
         makers["rounds.disagreement"] = partial(readings.disagreement, outcome.disagreement, bands=bands)

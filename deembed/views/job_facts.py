@@ -71,7 +71,9 @@ def _get(thing: Any, *keys: str, default: Any = None) -> Any:
 def _files(value: Any) -> tuple[str, ...]:
     if value is None:
         return ()
-    return (str(value),) if isinstance(value, str) or not hasattr(value, "__iter__") else tuple(map(str, value))
+    return (
+        (str(value),) if isinstance(value, str) or not hasattr(value, "__iter__") else tuple(map(str, value))
+    )
 
 
 def _closed(table: Any) -> dict[int, str]:
@@ -90,6 +92,7 @@ def facts_of(job: Any) -> JobFacts:
     -------
     JobFacts
     """
+    job = getattr(job, "spec", job)
     shared = _closed(_get(job, "terminations"))
     rounds = tuple(
         Round(
@@ -102,7 +105,9 @@ def facts_of(job: Any) -> JobFacts:
         for r in _get(job, "rounds", default=())
     )
     readings = tuple(
-        StandardReading(str(_get(r, "standard")), tuple(_get(r, "ports", default=())), _files(_get(r, "file")))
+        StandardReading(
+            str(_get(r, "standard")), tuple(_get(r, "ports", default=())), _files(_get(r, "file"))
+        )
         for r in _get(job, "calibration", "readings", default=())
     )
     arms = tuple(
@@ -110,7 +115,9 @@ def facts_of(job: Any) -> JobFacts:
         for a in _get(job, "fixture", "arms", default=()) or ()
     )
     expect = _get(job, "expect")
-    judged = {k: _get(expect, k) for k in ("passive", "reciprocal", "lossless") if _get(expect, k) is not None}
+    judged = {
+        k: _get(expect, k) for k in ("passive", "reciprocal", "lossless") if _get(expect, k) is not None
+    }
     return JobFacts(
         title=str(_get(job, "job", "title", default="")),
         part_ports=int(_get(job, "job", "part_ports", default=0)),

@@ -56,9 +56,13 @@ def error_box(outcome: Any, facts: JobFacts, port: int, length: float) -> Rows:
     rows = [("Method", f"{facts.method}, kit {facts.kit}"), ("One-way length", _length(length))]
     for name in ("directivity", "source_match", "reflection_tracking"):
         if port in terms.port_in.values:
-            rows.append((f"Highest {name.replace('_', ' ')}", _level(terms[name].sel(port_in=port).values, f)))
+            rows.append(
+                (f"Highest {name.replace('_', ' ')}", _level(terms[name].sel(port_in=port).values, f))
+            )
     rows += [
-        (f"{r.standard} on {words.listed(r.ports)}", ", ".join(r.files)) for r in facts.readings if port in r.ports
+        (f"{r.standard} on {words.listed(r.ports)}", ", ".join(r.files))
+        for r in facts.readings
+        if port in r.ports
     ]
     absent = redundancy_words(terms)
     if absent:
@@ -84,7 +88,9 @@ def cable_plane(outcome: Any, facts: JobFacts, port: int) -> Rows:
         rows.append(("Difference between readings", apart))
     for r in facts.rounds:
         if port not in r.part_ports:
-            rows.append((f"Closed in round {r.label} with", r.terminations.get(port, "a perfect match (none given)")))
+            rows.append(
+                (f"Closed in round {r.label} with", r.terminations.get(port, "a perfect match (none given)"))
+            )
     return tuple(rows)
 
 

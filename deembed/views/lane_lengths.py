@@ -61,7 +61,8 @@ def box_lengths(terms: xr.Dataset | None) -> dict[int, float]:
     for r in receivers:
         if r not in known:
             through = [
-                1e12 * delay_over(terms["transmission_tracking"].sel(port_out=r, port_in=d).values, f) - known[d]
+                1e12 * delay_over(terms["transmission_tracking"].sel(port_out=r, port_in=d).values, f)
+                - known[d]
                 for d in known
                 if d != r
             ]

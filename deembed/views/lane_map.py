@@ -155,7 +155,9 @@ def _alt(lanes: Sequence[Lane], part: Segment) -> str:
     return f"Lane map, {len(lanes)} lanes meeting at the part ({part.state_words}). {'. '.join(told)}."
 
 
-def _naming(findings: Iterable[Finding], answers: Iterable[tuple[str, tuple[int, ...]]], *, lane: int) -> list[Finding]:
+def _naming(
+    findings: Iterable[Finding], answers: Iterable[tuple[str, tuple[int, ...]]], *, lane: int
+) -> list[Finding]:
     """Findings that name one of these places; one that also names part ports counts in their lanes only."""
     answers, found = set(answers), []
     for f in findings:
@@ -179,49 +181,90 @@ def _lane(
         state = state_of(_naming(findings, answers, lane=port), absent=absent)
         label = more.get("round_label", "")
         key = f"lane-{port}/" + (f"round-{label}/" if label else "") + kind
-        segments.append(Segment(key, kind, where, title, *span, state.name, state.words, findings=state.findings, **more))
+        segments.append(
+            Segment(key, kind, where, title, *span, state.name, state.words, findings=state.findings, **more)
+        )
 
     for r in mine:
         analyzer = r.analyzer_ports[r.part_ports.index(port)]
         box = boxes.get(analyzer, float("nan"))
         far = start - (max(box, 0.0) if np.isfinite(box) else 0.0)
         standards = {
-            n for f in findings for n in map(place_ports, places(f.where)) if n[0] == "standard" and analyzer in n[1]
+            n
+            for f in findings
+            for n in map(place_ports, places(f.where))
+            if n[0] == "standard" and analyzer in n[1]
         }
         add(
-            "analyzer-port", f"port {analyzer}", f"Analyzer port {analyzer} in round {r.label}", (far, far),
+            "analyzer-port",
+            f"port {analyzer}",
+            f"Analyzer port {analyzer} in round {r.label}",
+            (far, far),
             {("port", (analyzer,)), ("switch", (analyzer,))},
             holds=holds.analyzer_port(outcome, facts, r, analyzer),
-            picture_name=f"raw.{r.files[0]}" if r.files else "", round_label=r.label,
+            picture_name=f"raw.{r.files[0]}" if r.files else "",
+            round_label=r.label,
         )
         add(
-            "error-box", f"port {analyzer}", f"Error box of analyzer port {analyzer} in round {r.label}", (far, start),
+            "error-box",
+            f"port {analyzer}",
+            f"Error box of analyzer port {analyzer} in round {r.label}",
+            (far, start),
             {("port", (analyzer,)), *standards},
             holds=holds.error_box(outcome, facts, analyzer, box),
-            picture_name=f"terms.port-{analyzer}" if outcome.terms is not None else "", round_label=r.label,
+            picture_name=f"terms.port-{analyzer}" if outcome.terms is not None else "",
+            round_label=r.label,
             absent="" if outcome.terms is not None else "already corrected by the instrument",
         )
     labels = {("round", r.part_ports) for r in mine} | {("round", r.part_ports[::-1]) for r in mine}
     add(
-        "cable-plane", f"part port {port}", f"Cable plane at part port {port}", (start, start),
+        "cable-plane",
+        f"part port {port}",
+        f"Cable plane at part port {port}",
+        (start, start),
         labels | {("termination", (port,))},
-        holds=holds.cable_plane(outcome, facts, port), picture_name=f"cable-plane.{port}",
+        holds=holds.cable_plane(outcome, facts, port),
+        picture_name=f"cable-plane.{port}" if mine else "",
     )
     add(
-        "arm", f"arm {port}", f"Arm {port}", (start, 0.0), {("arm", (port,))}, absent=arm_absent,
-        holds=holds.arm(outcome, facts, port, length), picture_name="" if arm_absent else f"arm.{port}",
+        "arm",
+        f"arm {port}",
+        f"Arm {port}",
+        (start, 0.0),
+        {("arm", (port,))},
+        absent=arm_absent,
+        holds=holds.arm(outcome, facts, port, length),
+        picture_name="" if arm_absent else f"arm.{port}",
     )
     add(
-        "part-port", f"part port {port}", f"Part port {port}", (0.0, 0.0), {("part port", (port,))},
-        holds=holds.part_port(outcome, port), picture_name="part.reflection",
+        "part-port",
+        f"part port {port}",
+        f"Part port {port}",
+        (0.0, 0.0),
+        {("part port", (port,))},
+        holds=holds.part_port(outcome, port),
+        picture_name="part.reflection",
     )
     return Lane(port, tuple(segments))
 
 
 def _part(outcome: Any, findings: Sequence[Finding]) -> Segment:
-    own = [f for f in findings if not places(f.where) or any(place_ports(p)[0] == "part" for p in places(f.where))]
+    own = [
+        f
+        for f in findings
+        if not places(f.where) or any(place_ports(p)[0] == "part" for p in places(f.where))
+    ]
     state = state_of(own)
     return Segment(
-        "part", "part", "", "The part", 0.0, 0.0, state.name, state.words, holds.part(outcome), "part.gain", state.findings
+        "part",
+        "part",
+        "",
+        "The part",
+        0.0,
+        0.0,
+        state.name,
+        state.words,
+        holds.part(outcome),
+        "part.gain",
+        state.findings,
     )
-

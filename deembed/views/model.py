@@ -16,6 +16,17 @@ from deembed import words
 from deembed.errors import DeembedError
 from deembed.findings import Finding
 
+_SAID = {
+    "gain": "gain above 1",
+    "power-balance": "more power out than in",
+    "non-reciprocity": "not reciprocal",
+    "lossless": "not lossless",
+    "three-way": "three-way law",
+    "missing": "no values",
+    "not-computed": "no values",
+    "disagreement": "readings differ",
+}
+
 __all__ = ["Band", "Limit", "Picture", "Reading", "Trace", "bands_of", "one_sweep", "room_around", "s_name"]
 
 
@@ -89,7 +100,9 @@ class Reading:
     def words(self) -> str:
         """The value as an engineer would write it, e.g. ``S21 -3.52 dB``."""
         if isinstance(self.value, complex):
-            text = f"{self.value.real:+.4f} {'+' if self.value.imag >= 0 else '-'} j{abs(self.value.imag):.4f}"
+            text = (
+                f"{self.value.real:+.4f} {'+' if self.value.imag >= 0 else '-'} j{abs(self.value.imag):.4f}"
+            )
         else:
             text = f"{self.value:.4g}" if np.isfinite(self.value) else "no value"
         return f"{self.name} {text} {self.unit}".strip()
@@ -187,7 +200,9 @@ def one_sweep(data: xr.DataArray | xr.Dataset, *, what: str) -> None:
         )
 
 
-def room_around(from_hz: float, to_hz: float, *, span: Sequence[float], share: float = 0.15) -> tuple[float, float]:
+def room_around(
+    from_hz: float, to_hz: float, *, span: Sequence[float], share: float = 0.15
+) -> tuple[float, float]:
     """A band with some room on either side, inside a span, so that a finding's edges can be seen.
 
     Parameters
@@ -212,7 +227,7 @@ def bands_of(findings: Iterable[Finding], *, kinds: Iterable[str] | None = None)
     """Bands of the findings that have one (notes aside), of some kinds or of all."""
     wanted = None if kinds is None else set(kinds)
     return tuple(
-        Band(f.from_hz, f.to_hz, f.kind.replace("-", " ").replace("_", " "), f.severity, f.id)
+        Band(f.from_hz, f.to_hz, _SAID.get(f.kind, f.kind.replace("-", " ")), f.severity, f.id)
         for f in findings
         if f.from_hz is not None
         and f.to_hz is not None

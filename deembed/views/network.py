@@ -12,7 +12,17 @@ from deembed import words
 from deembed.views.lengths import group_delay
 from deembed.views.model import Band, Picture, Trace, one_sweep, s_name
 
-__all__ = ["chart", "decibels", "delay", "entries", "magnitude", "peak", "phase", "reflection", "transmission"]
+__all__ = [
+    "chart",
+    "decibels",
+    "delay",
+    "entries",
+    "magnitude",
+    "peak",
+    "phase",
+    "reflection",
+    "transmission",
+]
 
 
 def decibels(values: NDArray) -> NDArray:
@@ -79,9 +89,7 @@ def _over(frequency: NDArray) -> str:
     return words.band(frequency[0], frequency[-1]) if frequency.size else "no frequencies"
 
 
-def magnitude(
-    s: xr.DataArray, *, which: str, name: str, title: str, bands: Sequence[Band] = ()
-) -> Picture:
+def magnitude(s: xr.DataArray, *, which: str, name: str, title: str, bands: Sequence[Band] = ()) -> Picture:
     """Magnitudes in decibels over frequency.
 
     Parameters
@@ -108,17 +116,31 @@ def magnitude(
     return Picture(name, title, "Magnitude (dB)", traces, "dB", bands=tuple(bands), alt=alt)
 
 
-def transmission(s: xr.DataArray, *, name: str = "part.transmission", title: str = "Transmission", bands: Sequence[Band] = ()) -> Picture:
+def transmission(
+    s: xr.DataArray,
+    *,
+    name: str = "part.transmission",
+    title: str = "Transmission",
+    bands: Sequence[Band] = (),
+) -> Picture:
     """Magnitude between different ports [dB]; see `magnitude`."""
     return magnitude(s, which="through", name=name, title=title, bands=bands)
 
 
-def reflection(s: xr.DataArray, *, name: str = "part.reflection", title: str = "Reflection", bands: Sequence[Band] = ()) -> Picture:
+def reflection(
+    s: xr.DataArray, *, name: str = "part.reflection", title: str = "Reflection", bands: Sequence[Band] = ()
+) -> Picture:
     """Magnitude of the reflections [dB]; see `magnitude`."""
     return magnitude(s, which="reflection", name=name, title=title, bands=bands)
 
 
-def phase(s: xr.DataArray, *, name: str = "part.phase", title: str = "Phase of transmission", bands: Sequence[Band] = ()) -> Picture:
+def phase(
+    s: xr.DataArray,
+    *,
+    name: str = "part.phase",
+    title: str = "Phase of transmission",
+    bands: Sequence[Band] = (),
+) -> Picture:
     """Phase between different ports [degrees], -180 to 180, not unwrapped; see `magnitude`."""
     f = np.asarray(s.frequency.values, dtype=float)
     which = "through" if s.sizes["port_out"] > 1 else "reflection"
@@ -134,7 +156,9 @@ def phase(s: xr.DataArray, *, name: str = "part.phase", title: str = "Phase of t
     return Picture(name, title, "Phase (degrees)", traces, "degrees", bands=tuple(bands), alt=alt)
 
 
-def delay(s: xr.DataArray, *, name: str = "part.delay", title: str = "Group delay", bands: Sequence[Band] = ()) -> Picture:
+def delay(
+    s: xr.DataArray, *, name: str = "part.delay", title: str = "Group delay", bands: Sequence[Band] = ()
+) -> Picture:
     """Group delay between different ports [ps], over an aperture of about 1 % of the sweep; see `magnitude`."""
     f = np.asarray(s.frequency.values, dtype=float)
     half = max(1, round(f.size / 200))

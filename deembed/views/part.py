@@ -70,7 +70,9 @@ def _pairs(error: xr.DataArray) -> list[tuple[str, int, int]]:
     ]
 
 
-def reciprocity(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "part.reciprocity") -> Picture:
+def reciprocity(
+    metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "part.reciprocity"
+) -> Picture:
     """Difference of the two directions, per port pair.
 
     Parameters
@@ -178,7 +180,10 @@ def three_way(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "p
     """
     f = _frequency(metrics)
     total, floor = metrics["reflection_sum"].values, metrics["three_way_floor"].values
-    traces = (Trace("reflections added up", f, total, 0), Trace("least for a reciprocal part", f, floor, 1, 1))
+    traces = (
+        Trace("reflections added up", f, total, 0),
+        Trace("least for a reciprocal part", f, floor, 1, 1),
+    )
     slack = peak([Trace("slack", f, total - floor)], lowest=True)
     told = "no values"
     if slack is not None:
@@ -196,7 +201,9 @@ def three_way(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "p
     )
 
 
-def lossless_error(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "part.lossless") -> Picture:
+def lossless_error(
+    metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "part.lossless"
+) -> Picture:
     """How far S is from lossless (spectral norm of S^H S minus one); see `power_balance` for arguments."""
     f = _frequency(metrics)
     trace = Trace("from lossless", f, metrics["lossless_error"].values)

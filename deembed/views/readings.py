@@ -62,7 +62,9 @@ def reflection_readings(rounds: Sequence[xr.DataArray], *, port: int, labels: Se
     for k, (one, label) in enumerate(zip(rounds, labels, strict=True)):
         if port in one.port_out.values:
             values = one.sel(port_out=port, port_in=port).values
-            traces.append(Trace(f"in round {label}", one.frequency.values, decibels(values), k, len(traces) % 2))
+            traces.append(
+                Trace(f"in round {label}", one.frequency.values, decibels(values), k, len(traces) % 2)
+            )
     title = f"Readings of {s_name(port, port)} at the cable plane"
     alt = f"{title}, magnitude: {said(traces, 'dB')}."
     return Picture(f"cable-plane.{port}", title, "Magnitude (dB)", tuple(traces), "dB", alt=alt)
@@ -93,12 +95,12 @@ def disagreement(spread: xr.DataArray, *, bands: Sequence[Band] = ()) -> Picture
     found = np.isfinite(apart).sum(axis=(0, 1)) > 1  # a lone reading only differs from itself, by nothing
     widest = np.where(found, np.max(np.where(np.isfinite(apart), apart, 0.0), axis=(0, 1)), np.nan)
     f = spread.frequency.values
-    traces = tuple(
-        Trace(f"part port {int(p)}", f, widest[:, k], k) for k, p in enumerate(spread.port.values)
-    )
+    traces = tuple(Trace(f"part port {int(p)}", f, widest[:, k], k) for k, p in enumerate(spread.port.values))
     top = peak(traces)
-    told = "no port was read twice" if top is None else (
-        f"at most {top[1]:.3g} ({top[0]} at {words.frequency(top[2])})"
+    told = (
+        "no port was read twice"
+        if top is None
+        else (f"at most {top[1]:.3g} ({top[0]} at {words.frequency(top[2])})")
     )
     return Picture(
         "rounds.disagreement",
@@ -160,4 +162,6 @@ def coupling(shell: xr.Dataset) -> Picture:
     """
     block = shell["inner_outer"]
     one_sweep(block, what="the fixture")
-    return magnitude(block, which="through", name="fixture.coupling", title="Leakage between the fixture's arms")
+    return magnitude(
+        block, which="through", name="fixture.coupling", title="Leakage between the fixture's arms"
+    )

@@ -51,9 +51,7 @@ def port_terms(terms: xr.Dataset, *, port: int) -> Picture:
                 value = terms[name].sel(port_out=port, port_in=d).values
                 label = name.replace("_", " ") + (f" from {d}" if len(others) > 1 else "")
                 traces.append(Trace(label, f, decibels(value), 3 + k, 1 + n))
-    told = "; ".join(
-        f"{t.name} at most {np.nanmax(t.y):.3g} dB" for t in traces if not t.empty
-    )
+    told = "; ".join(f"{t.name} at most {np.nanmax(t.y):.3g} dB" for t in traces if not t.empty)
     return Picture(
         f"terms.port-{port}",
         f"Error terms of analyzer port {port}",
@@ -93,8 +91,10 @@ def redundancy(terms: xr.Dataset, *, bands: Sequence[Band] = ()) -> Picture:
             for k, p in enumerate(residual.pair.values)
         )
     top = peak(traces)
-    told = redundancy_words(terms) if top is None else (
-        f"at most {top[1]:.3g} ({top[0]} at {words.frequency(top[2])})"
+    told = (
+        redundancy_words(terms)
+        if top is None
+        else (f"at most {top[1]:.3g} ({top[0]} at {words.frequency(top[2])})")
     )
     return Picture(
         "terms.redundancy",
