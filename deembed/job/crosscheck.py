@@ -171,7 +171,8 @@ def _coverage(spec: JobFile, place: Place) -> None:
     if never:
         raise place.error(
             ("rounds",),
-            f"part {'port' if len(never) == 1 else 'ports'} {words.listed(never)} never read; "
+            f"part {'port' if len(never) == 1 else 'ports'} {words.listed(never)} "
+            f"{'is' if len(never) == 1 else 'are'} never read; "
             f"the rounds are {words.listed(pair(one.part_ports) for one in spec.rounds)}",
             "Add rounds that read every pair of part ports.",
         )

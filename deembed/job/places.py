@@ -108,8 +108,9 @@ def line_of(text: str, path: Iterable[str | int]) -> int | None:
     lines = _lines(text)
     path = tuple(path)
     while path:
-        if path in lines:
-            return lines[path]
+        for here in (path, (*path, 0)):  # a list of tables stands where its first table stands
+            if here in lines:
+                return lines[here]
         path = path[:-1]
     return None
 

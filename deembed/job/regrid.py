@@ -47,7 +47,7 @@ def bring_onto(
     own = data.frequency.values
     if frequency[0] < own[0] or frequency[-1] > own[-1]:
         raise GridError(
-            f"{name} reaches over {words.grid(own)}; the part was read over {words.grid(frequency)}",
+            f"{name}: only {words.grid(own)} came; the part was read over {words.grid(frequency)}",
             where="nothing is extrapolated",
             do="Read it over the whole band of the part, or read the part over less.",
         )

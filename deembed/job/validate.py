@@ -58,7 +58,11 @@ def validate(text: str, *, name: str = "job.toml") -> JobFile:
     try:
         spec = JobFile.model_validate(data)
     except ValidationError as problems:
-        first = min(problems.errors(), key=lambda e: (line_of(text, e["loc"]) or 10**9, len(e["loc"])))
+        # A mistyped key also leaves one missing; the mistyped one is what to look at.
+        first = min(
+            problems.errors(),
+            key=lambda e: (e["type"] == "missing", line_of(text, e["loc"]) or 10**9, len(e["loc"])),
+        )
         raise _said(first, place) from None
     crosscheck(spec, place)
     return spec

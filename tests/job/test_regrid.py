@@ -1,0 +1,69 @@
+"""Other grids: exact on known points and on delays, never beyond the ends, and always said."""
+
+from __future__ import annotations
+
+import re
+
+import numpy as np
+import pytest
+
+from deembed.errors import GridError
+from deembed.job.regrid import bring_onto
+from deembed.labels import sparams
+from deembed.numeric.regrid import delay_of, onto_grid
+
+
+def test_the_delay_is_found_and_a_pure_delay_survives_exactly() -> None:
+    own = np.linspace(1e9, 3e9, 41)
+    target = np.linspace(1e9, 3e9, 57)
+    values = np.exp(-2j * np.pi * own * np.array([[0.3e-9], [5e-9]])) * np.array([[0.5], [2.0]])
+    assert np.allclose(delay_of(values, own), [0.3e-9, 5e-9], rtol=1e-9)
+    exact = np.exp(-2j * np.pi * target * np.array([[0.3e-9], [5e-9]])) * np.array([[0.5], [2.0]])
+    assert np.abs(onto_grid(values, own, target) - exact).max() < 1e-12
+
+
+def test_a_cubic_is_met_exactly_also_on_an_uneven_grid() -> None:
+    own = np.array([0.0, 1.0, 3.0, 4.0, 7.0, 9.0])
+    target = np.array([0.5, 3.5, 8.9])
+    cubic = lambda f: 1 + 0.1 * f - 0.02 * f**2 + 0.003 * f**3  # noqa: E731
+    assert np.abs(onto_grid(cubic(own).astype(complex), own, target) - cubic(target)).max() < 1e-12
+
+
+def test_what_is_not_a_number_stays_local_and_known_points_are_kept_bit_for_bit() -> None:
+    own = np.linspace(0.0, 10.0, 11)
+    values = np.exp(-1j * own)
+    values[5] = np.nan
+    out = onto_grid(values, own, np.array([0.0, 1.5, 4.0, 4.5, 9.5]))
+    assert out[0] == values[0] and out[2] == values[4]
+    assert np.isnan(out).tolist() == [False, False, False, True, False]
+    assert np.isnan(onto_grid(np.full(11, np.nan + 0j), own, np.array([0.5]))).all()
+    assert onto_grid(np.array([1j]), np.array([5.0]), np.array([5.0])) == 1j
+
+
+def test_a_labelled_array_keeps_its_ports_impedance_and_says_how_good_it_is() -> None:
+    own, target = np.linspace(1e9, 2e9, 21), np.linspace(1.1e9, 1.9e9, 5)
+    curve = 0.5 * np.exp(-2j * np.pi * own * 1e-9) / (1 + 1j * own / 5e9)
+    z0 = np.stack([50 + own / 1e9, 75 + 0 * own], axis=-1)
+    values = curve[:, None, None] * np.array([[1, 0.5], [0.5, 0.2]])
+    moved, note = bring_onto(sparams(values, own, z0=z0, ports=(2, 5)), target, name="arm 3", where="arm 3")
+    assert moved.dims == ("frequency", "port_out", "port_in") and moved.port_out.values.tolist() == [2, 5]
+    assert np.allclose(moved.z0.values[:, 0], 50 + target / 1e9)
+    exact = 0.5 * np.exp(-2j * np.pi * target * 1e-9) / (1 + 1j * target / 5e9)
+    assert np.abs(moved.values[:, 0, 0] - exact).max() < 1e-6
+    assert note.id == "interpolated-arm-3-1" and note.severity == "note"
+    assert note.text.startswith(
+        "Arm 3 went from 21 points, 1 GHz to 2 GHz onto the part's grid of 5 points, 1.1 GHz to 1.9 GHz by "
+        "interpolation, as job.interpolate allows; leaving out every second point, it comes back within "
+    )
+    assert 0 < note.worst < 1e-4 and own[0] < note.worst_hz < own[-1]
+
+
+def test_nothing_is_extrapolated() -> None:
+    one = sparams(np.zeros((3, 1, 1)), [1e9, 2e9, 3e9])
+    message = (
+        "nothing is extrapolated: the error terms: only 3 points, 1 GHz to 3 GHz came; the part was read "
+        "over "
+        "2 points, 1 GHz to 3.5 GHz. Read it over the whole band of the part, or read the part over less."
+    )
+    with pytest.raises(GridError, match=f"^{re.escape(message)}$"):
+        bring_onto(one, np.array([1e9, 3.5e9]), name="the error terms")
