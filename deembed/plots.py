@@ -1,7 +1,7 @@
 """Matplotlib drawings of pictures: axes, figures without pyplot, and inline SVG.
 
-Colours are the colour-blind safe palette of Okabe & Ito (2008, "Color Universal Design"), always with line styles,
-markers and direct labels beside them.
+Colours are the colour-blind safe palette of Okabe & Ito (2008, "Color Universal Design"), always with line
+styles, markers and direct labels beside them.
 """
 
 from __future__ import annotations
@@ -174,7 +174,7 @@ def svg(
 
 
 def _inline(text: str, picture: Picture, *, width: float, height: float) -> str:
-    """Only the svg element, with role and label, its ids made unique, its numbers to a hundredth of a point."""
+    """Only the svg element, with role and label, ids made unique, places to a hundredth of a point."""
     body = text[text.index("<svg") :]
     view = re.search(r'viewBox="([^"]+)"', body)
     inner = body[body.index(">") + 1 :].replace("<defs>\n  <style", "<defs><style")

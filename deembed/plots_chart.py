@@ -1,4 +1,4 @@
-"""The reflection chart (Smith chart): our own grid of normalized resistance and reactance, and curves on it."""
+"""The reflection chart (Smith chart): a grid of normalized resistance and reactance, and curves on it."""
 
 from __future__ import annotations
 

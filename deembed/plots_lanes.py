@@ -117,19 +117,29 @@ def _text(x: float, y: float, words: str, ink: str, *, anchor: str = "start", mo
     return f'<text x="{x:.1f}" y="{y:.1f}" text-anchor="{anchor}" fill="{ink}" {more}>{escape(words)}</text>'
 
 
+def _line(x1: float, y1: float, x2: float, y2: float, ink: str, wide: float, *, dash: str = "") -> str:
+    more = f' stroke-dasharray="{dash}"' if dash else ""
+    ends = f'x1="{x1:.1f}" y1="{y1:.1f}" x2="{x2:.1f}" y2="{y2:.1f}"'
+    return f'<line {ends} stroke="{ink}" stroke-width="{wide:g}"{more}/>'
+
+
+def _rect(x: float, y: float, w: float, h: float, more: str) -> str:
+    return f'<rect x="{x:.1f}" y="{y:.1f}" width="{w:.1f}" height="{h:.1f}" {more}/>'
+
+
 def _outline(s: Segment, box: tuple[float, float, float, float]) -> str:
     """Path of a segment; a warning has a notch in its upper edge."""
     x, y, w, h = box
-    notch = min(7.0, w / 3)
-    middle = x + w / 2
+    notch = min(6.0, w / 3)
+    middle = x + w - min(h / 2, w / 2) - notch - 2  # near the end, clear of the words
     dent = f"L{middle - notch:.1f},{y:.1f} L{middle:.1f},{y + notch:.1f} L{middle + notch:.1f},{y:.1f} "
     dent = dent if s.state == "warning" else ""
     if s.kind == "arm":
         r = min(h / 2, w / 2)
-        return (
-            f"M{x + r:.1f},{y:.1f} {dent}L{x + w - r:.1f},{y:.1f} A{r:.1f},{h / 2:.1f} 0 0 1 {x + w - r:.1f},{y + h:.1f} "
-            f"L{x + r:.1f},{y + h:.1f} A{r:.1f},{h / 2:.1f} 0 0 1 {x + r:.1f},{y:.1f} Z"
-        )
+        left, right, low = x + r, x + w - r, y + h
+        arc = f"A{r:.1f},{h / 2:.1f} 0 0 1"
+        over = f"M{left:.1f},{y:.1f} {dent}L{right:.1f},{y:.1f} {arc} {right:.1f},{low:.1f}"
+        return f"{over} L{left:.1f},{low:.1f} {arc} {left:.1f},{y:.1f} Z"
     if s.kind == "analyzer-port":
         return (
             f"M{x:.1f},{y:.1f} {dent}L{x + w - 10:.1f},{y:.1f} L{x + w:.1f},{y + h / 2:.1f} "
@@ -155,7 +165,8 @@ def _short_words(s: Segment, room: float) -> str:
     if s.kind == "arm" and s.state == "absent":
         told = ("",)
     shape = f"{SHAPES[s.state]} " if SHAPES[s.state] else ""
-    return next((shape + t for t in told if t and 8.2 * len(shape + t) + 8 <= room), "")
+    tries = [shape + t for t in told if t] + [t for t in told if t]
+    return next((t for t in tries if 8.2 * len(t) + 8 <= room), "")
 
 
 def _segment(
@@ -170,37 +181,28 @@ def _segment(
     body = []
     if s.kind == "cable-plane":
         stroke = 5 if s.state in ("warning", "contradiction") or selected else 3
-        body.append(
-            f'<line x1="{x + w / 2:.1f}" x2="{x + w / 2:.1f}" y1="{y:.1f}" y2="{y + h:.1f}" stroke="{style.ink}" '
-            f'stroke-width="{stroke}"/>'
-        )
+        body.append(_line(x + w / 2, y, x + w / 2, y + h, style.ink, stroke))
     elif s.kind == "part-port":
-        body.append(
-            f'<circle cx="{x + w / 2:.1f}" cy="{y + h / 2:.1f}" r="{h / 2:.1f}" fill="{fill}" stroke="{style.ink}" '
-            f'stroke-width="{wide}"/>'
-        )
+        place = f'cx="{x + w / 2:.1f}" cy="{y + h / 2:.1f}" r="{h / 2:.1f}"'
+        body.append(f'<circle {place} fill="{fill}" stroke="{style.ink}" stroke-width="{wide}"/>')
     elif w > 0:
         body.append(
             f'<path d="{_outline(s, box)}" fill="{fill}" stroke="{style.ink}" stroke-width="{wide}"{dash}/>'
         )
     if label and s.state == "contradiction":
         pill = 8.2 * len(label) + 6
-        body.append(
-            f'<rect x="{x + w / 2 - pill / 2:.1f}" y="{y + h / 2 - 10:.1f}" width="{pill:.1f}" height="20" '
-            f'fill="{style.paper}"/>'
-        )
+        body.append(_rect(x + w / 2 - pill / 2, y + h / 2 - 10, pill, 20, f'fill="{style.paper}"'))
     if label:
         bold = 'font-weight="bold"' if selected else ""
         body.append(_text(x + w / 2, y + h / 2 + 5, label, style.ink, anchor="middle", more=bold))
     if selected:
-        body.append(
-            f'<rect x="{x - 4:.1f}" y="{y - 4:.1f}" width="{w + 8:.1f}" height="{h + 8:.1f}" rx="4" fill="none" '
-            f'stroke="{style.hues[0]}" stroke-width="2.5" stroke-dasharray="2 3"/>'
-        )
+        ring = f'rx="4" fill="none" stroke="{style.hues[0]}" stroke-width="2.5" stroke-dasharray="2 3"'
+        body.append(_rect(x - 4, y - 4, w + 8, h + 8, ring))
     if SHAPES[s.state] and SHAPES[s.state] not in label:
         body.append(_text(x + w / 2, y - 3, SHAPES[s.state], style.ink, anchor="middle"))
     chosen = ' data-chosen="yes"' if selected else ""
-    return f'<g class="segment" data-segment={quoteattr(s.id)} data-state="{s.state}"{chosen}>{"".join(body)}</g>'
+    known = f'data-segment={quoteattr(s.id)} data-state="{s.state}"{chosen}'
+    return f'<g class="segment" {known}>{"".join(body)}</g>'
 
 
 def _caption(lane: Lane) -> str:
@@ -227,12 +229,10 @@ def _axis(lane_map: LaneMap, at: Layout, style: Theme) -> str:
     y = at.height - 44
     first = at.broken_at or _LEFT + _TAB
     reach = (at.part_x - first) / at.px_per_ps if at.px_per_ps else 0.0
-    out = [
-        f'<line x1="{first:.1f}" x2="{at.part_x:.1f}" y1="{y}" y2="{y}" stroke="{style.ink}" stroke-width="1.2"/>'
-    ]
+    out = [_line(first, y, at.part_x, y, style.ink, 1.2)]
     for t in _ticks(reach, at.part_x - first):
         x = at.part_x - t * at.px_per_ps
-        out.append(f'<line x1="{x:.1f}" x2="{x:.1f}" y1="{y}" y2="{y + 6}" stroke="{style.ink}"/>')
+        out.append(_line(x, y, x, y + 6, style.ink, 1))
         out.append(_text(x, y + 21, f"{t:g}", style.ink, anchor="middle"))
     words = "electrical distance from the part plane (ps)"
     if at.broken_at:
@@ -249,14 +249,11 @@ def _breaks(lane_map: LaneMap, at: Layout, style: Theme) -> str:
     for lane in lane_map.lanes:
         for s in lane.of("error-box"):
             x, y, w, h = at.boxes[s.id]
-            cut = x + w - 16
-            gap = f"{cut - 4:.1f},{y + h + 3:.1f} {cut + 2:.1f},{y - 3:.1f} {cut + 8:.1f},{y - 3:.1f} {cut + 2:.1f},{y + h + 3:.1f}"
-            out.append(f'<polygon points="{gap}" fill="{style.paper}"/>')
-            for dx in (0, 6):
-                out.append(
-                    f'<line x1="{cut - 4 + dx:.1f}" y1="{y + h + 3:.1f}" x2="{cut + 2 + dx:.1f}" y2="{y - 3:.1f}" '
-                    f'stroke="{style.ink}" stroke-width="1.3"/>'
-                )
+            cut, top, low = x + w - 16, y - 3, y + h + 3
+            corners = ((cut - 4, low), (cut + 2, top), (cut + 8, top), (cut + 2, low))
+            points = " ".join(f"{px:.1f},{py:.1f}" for px, py in corners)
+            out.append(f'<polygon points="{points}" fill="{style.paper}"/>')
+            out += [_line(cut - 4 + dx, low, cut + 2 + dx, top, style.ink, 1.3) for dx in (0, 6)]
     return "".join(out)
 
 
@@ -264,10 +261,7 @@ def _wires(lane: Lane, at: Layout, style: Theme) -> str:
     """From the arm's end over the part port to the part."""
     middle = at.rows[lane.part_port][1]
     px = at.boxes["part"][0]
-    return (
-        f'<line x1="{at.part_x:.1f}" x2="{px:.1f}" y1="{middle:.1f}" y2="{middle:.1f}" stroke="{style.ink}" '
-        f'stroke-width="2"/>'
-    )
+    return _line(at.part_x, middle, px, middle, style.ink, 2)
 
 
 def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: Theme) -> str:
@@ -280,15 +274,12 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
         f'<line x1="0" y1="0" x2="0" y2="7" stroke="{style.ink}" stroke-width="2.2"/></pattern></defs>'
     ]
     foot = at.height - 44
-    out.append(
-        f'<line x1="{at.part_x:.1f}" x2="{at.part_x:.1f}" y1="{_TOP - 10}" y2="{foot:.1f}" stroke="{style.ink}" '
-        f'stroke-width="1.4" stroke-dasharray="10 3"/>'
-    )
+    out.append(_line(at.part_x, _TOP - 10, at.part_x, foot, style.ink, 1.4, dash="10 3"))
     out.append(_text(at.part_x + 2, _TOP - 14, "part plane", style.ink, anchor="end"))
     out.append(_text(at.part_x + 10, _TOP - 14, "part port", style.ink))
     out.append(_text(_LEFT, _TOP - 14, "analyzer", style.ink))
     for n, lane in enumerate(lane_map.lanes):
-        top, middle, bottom = at.rows[lane.part_port]
+        top, _, bottom = at.rows[lane.part_port]
         out.append(_wires(lane, at, style))
         for k, s in enumerate(lane.of("analyzer-port")):
             out.append(_text(8, top + k * _ROW + _ROW / 2 + 5, f"round {s.round_label}", style.ink))
@@ -307,8 +298,7 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
             _text(x + w, y + h + 18, f"{SHAPES[part.state]} {part.state_words}", style.ink, anchor="end")
         )
     out.append(_axis(lane_map, at, style))
-    return (
-        f'<svg xmlns="http://www.w3.org/2000/svg" role="img" aria-label={quoteattr(lane_map.alt)} class="lanes" '
-        f'viewBox="0 0 {at.width:g} {at.height:g}" width="{at.width:g}" height="{at.height:g}" '
-        f'style="max-width:100%;height:auto" font-family="sans-serif" font-size="{TEXT}">{"".join(out)}</svg>'
-    )
+    size = f'viewBox="0 0 {at.width:g} {at.height:g}" width="{at.width:g}" height="{at.height:g}"'
+    look = f'style="max-width:100%;height:auto" font-family="sans-serif" font-size="{TEXT}"'
+    said = f'role="img" aria-label={quoteattr(lane_map.alt)}'
+    return f'<svg xmlns="http://www.w3.org/2000/svg" {said} class="lanes" {size} {look}>{"".join(out)}</svg>'

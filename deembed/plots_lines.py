@@ -34,7 +34,7 @@ def draw_lines(
     if high <= low:
         low, high = low - max(0.01 * low, 0.5), high + max(0.01 * high, 0.5)
     scale, unit = frequency_unit(high)
-    pixels = max(int(ax.figure.get_figwidth() * 96), 200)
+    pixels = max(int(_points(ax)[0] * 96 / 72), 200)
     curves, shown = [], []
     for k, t in enumerate(picture.traces):
         x, y = _seen(t, low, high, pixels)
@@ -55,6 +55,11 @@ def draw_lines(
     if cursor is not None:
         more += _cursor(ax, picture, cursor, scale, style)
     return [*curves, *more]
+
+
+def _points(ax: Axes) -> tuple[float, float]:
+    """Width and height of the axes [pt]."""
+    return max(ax.bbox.width * 72 / ax.figure.dpi, 60.0), max(ax.bbox.height * 72 / ax.figure.dpi, 60.0)
 
 
 def _seen(t: Trace, low: float, high: float, pixels: int) -> tuple[NDArray, NDArray]:
@@ -147,7 +152,8 @@ def _bands(
                 ax.annotate(
                     b.word, ((right if near_end else left) / scale, 1.0), xycoords=("data", "axes fraction"),
                     xytext=(-4 if near_end else 4, -4 - 13 * row), textcoords="offset points", va="top",
-                    ha="right" if near_end else "left", color=style.ink, fontsize=style.text_pt, style="italic",
+                    ha="right" if near_end else "left", color=style.ink, fontsize=style.text_pt,
+                    style="italic",
                 )
             )  # fmt: skip
     return out
@@ -156,7 +162,7 @@ def _bands(
 def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: Theme) -> list[Artist]:
     """Names at the right ends of the curves, spread so that none covers another, each tied to its end."""
     low, high = ax.get_ylim()
-    height = max(ax.get_position().height * ax.figure.get_figheight() * 72, 60)  # points
+    across, height = _points(ax)
     unit = (high - low) / height
     ends = []
     for t, line in zip(traces, curves, strict=True):
@@ -168,7 +174,6 @@ def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: 
     gap = (style.text_pt + 3) * unit
     spots = _spread([e[0] for e in ends], gap, low, high)
     right = ax.get_xlim()[1]
-    across = ax.get_position().width * ax.figure.get_figwidth() * 72
     out: list[Artist] = []
     for (y, x, t), spot in zip(ends, spots, strict=True):
         out.append(
@@ -211,8 +216,8 @@ def _cursor(ax: Axes, picture: Picture, cursor: float, scale: float, style: Them
     out: list[Artist] = [ax.axvline(cursor / scale, color=style.ink, linewidth=1.2)]
     for t, r in zip(picture.traces, picture.at(cursor), strict=True):
         out += ax.plot(
-            [r.frequency / scale], [r.value], linestyle="none", marker="o", markersize=9, markerfacecolor="none",
-            markeredgecolor=style.hue(t.hue), markeredgewidth=2,
+            [r.frequency / scale], [r.value], linestyle="none", marker="o", markersize=9,
+            markerfacecolor="none", markeredgecolor=style.hue(t.hue), markeredgewidth=2,
         )  # fmt: skip
     out.append(
         ax.annotate(

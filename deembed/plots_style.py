@@ -43,7 +43,7 @@ class Theme:
     text_pt: float = 11.0
 
     def hue(self, number: int) -> str:
-        """Colour of a place in the palette; beyond the palette it starts again (line style and marker differ)."""
+        """Colour of a place in the palette; beyond the palette it starts again."""
         return self.hues[number % len(self.hues)]
 
 

@@ -46,7 +46,8 @@ def _drawings(inventory: Inventory, names: Sequence[str]) -> list[Drawing]:
         if name not in inventory:
             continue
         picture = inventory[name]
-        drawn = svg(picture, width=760, height=560 if picture.kind == "reflection" else 340)
+        round_ = picture.kind == "reflection"
+        drawn = svg(picture, width=600 if round_ else 960, height=560 if round_ else 330)
         missing = f"Without values: {', '.join(picture.missing)}." if picture.missing else ""
         out.append(Drawing(name, Markup(drawn), picture.alt, missing))
     return out

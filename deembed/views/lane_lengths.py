@@ -46,8 +46,8 @@ def box_lengths(terms: xr.Dataset | None) -> dict[int, float]:
     Returns
     -------
     dict of int to float
-        Half the two-way delay of the reflection tracking; for a port that never drives, the transmission tracking
-        from one that does, less that one's own length. NaN where neither has values.
+        Half the two-way delay of the reflection tracking; for a port that never drives, the transmission
+        tracking from one that does, less that one's own length. NaN where neither has values.
     """
     if terms is None:
         return {}

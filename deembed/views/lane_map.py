@@ -1,4 +1,4 @@
-"""The signal path as lanes to scale: one lane per part port, from analyzer port to part, meeting at the part."""
+"""The signal path as lanes to scale: one lane per part port, from analyzer port to the part they meet at."""
 
 from __future__ import annotations
 
@@ -33,7 +33,7 @@ class Segment:
         Words as in findings, e.g. ``arm 3``.
     title : str
     from_ps, to_ps : float
-        Electrical distance from the part's plane [ps], negative toward the analyzer; equal for planes and ports.
+        Electrical distance from the part's plane [ps], negative toward the analyzer; equal for planes.
     state, state_words : str
         One of `deembed.views.places.STATES`, and what that means here.
     holds : tuple of (label, value)

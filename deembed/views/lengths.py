@@ -34,8 +34,8 @@ def delay_over(values: ArrayLike, frequency: ArrayLike) -> float:
     Returns
     -------
     float
-        [s]; NaN with fewer than two usable points. A delay over half a turn per frequency step is ambiguous; as
-        cables delay, the answer then lies between -0.1 and 0.9 turns per (median) step.
+        [s]; NaN with fewer than two usable points. A delay over half a turn per frequency step is ambiguous;
+        as cables delay, the answer lies between -0.1 and 0.9 turns per (median) step.
 
     Notes
     -----

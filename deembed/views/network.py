@@ -159,7 +159,7 @@ def phase(
 def delay(
     s: xr.DataArray, *, name: str = "part.delay", title: str = "Group delay", bands: Sequence[Band] = ()
 ) -> Picture:
-    """Group delay between different ports [ps], over an aperture of about 1 % of the sweep; see `magnitude`."""
+    """Group delay between different ports [ps], aperture about 1 % of the sweep; see `magnitude`."""
     f = np.asarray(s.frequency.values, dtype=float)
     half = max(1, round(f.size / 200))
     which = "through" if s.sizes["port_out"] > 1 else "reflection"

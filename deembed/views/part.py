@@ -176,7 +176,7 @@ def three_way(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "p
 
     References
     ----------
-    R. C. Thompson, Linear Algebra Appl. 26 (1979): singular values and diagonal of a complex symmetric matrix.
+    R. C. Thompson, Linear Algebra Appl. 26 (1979).
     """
     f = _frequency(metrics)
     total, floor = metrics["reflection_sum"].values, metrics["three_way_floor"].values
@@ -196,7 +196,7 @@ def three_way(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "p
         traces,
         "",
         bands=tuple(bands),
-        alt=f"Sum of the three reflection magnitudes and the floor s2 + s3 − s1 of a reciprocal part: {told}.",
+        alt=f"Sum of the three reflection magnitudes beside its floor in a reciprocal part: {told}.",
         y_floor=0.0,
     )
 

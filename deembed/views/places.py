@@ -32,7 +32,7 @@ def places(where: str) -> tuple[str, ...]:
 
 
 def place_ports(place: str) -> tuple[str, tuple[int, ...]]:
-    """What and which ports a place names: ``thru 1-2`` is ``("standard", (1, 2))``, ``arm 3`` ``("arm", (3,))``."""
+    """What a place names, and which ports: ``thru 1-2`` is ``("standard", (1, 2))``."""
     found = _PLACE.match(place)
     if not found:
         return "part", ()
@@ -60,5 +60,5 @@ def state_of(findings: Iterable[Finding], *, absent: str = "") -> State:
     said = ", ".join(f"{n} {s}{'s' if n > 1 else ''}" for s, n in counts.items() if n)
     worst = next((s for s in SEVERITIES if counts[s]), "")
     if absent:
-        return State("absent" if not worst else worst, f"{absent}{'; ' + said if said else ''}", ids)
+        return State(worst or "absent", f"{absent}{'; ' + said if said else ''}", ids)
     return State(worst or "plain", said or "nothing noted", ids)

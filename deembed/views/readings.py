@@ -58,7 +58,7 @@ def reflection_readings(rounds: Sequence[xr.DataArray], *, port: int, labels: Se
     -------
     Picture
     """
-    traces = []
+    traces: list[Trace] = []
     for k, (one, label) in enumerate(zip(rounds, labels, strict=True)):
         if port in one.port_out.values:
             values = one.sel(port_out=port, port_in=port).values
@@ -76,7 +76,7 @@ def disagreement(spread: xr.DataArray, *, bands: Sequence[Band] = ()) -> Picture
     Parameters
     ----------
     spread : DataArray of shape (round, frequency, port)
-        Complex, reading minus mean, with every free port closed the same way; NaN where a round does not read a port.
+        Complex, reading minus mean, as `deembed.threeport` gives it; NaN where a round does not read a port.
     bands : sequence of Band
 
     Returns

@@ -14,8 +14,8 @@ ENOUGH = 1600
 def thin(x: ArrayLike, *values: ArrayLike, pixels: int = 700, enough: int = ENOUGH) -> NDArray:
     """Indices of the points worth drawing.
 
-    In each column of pixels the first and last point and the lowest and highest of every value stay, and so do
-    points without a value beside ones that have one: peaks, notches and gaps look as they did.
+    In each column of pixels the first and last point and the lowest and highest of every value stay, and so
+    do points without a value beside ones that have one: peaks, notches and gaps look as they did.
 
     Parameters
     ----------
