@@ -154,7 +154,7 @@ def in_port_waves(
             out[port] = xr.DataArray(complex(value))
             continue
         if "frequency" in value.dims:
-            same_grid(like, value, names=("the rounds", name))
+            same_grid(like, value, names=("each round", name))
         if "port_out" in value.dims:
             value = check(value, what=name)
             if value.sizes["port_out"] != 1:
