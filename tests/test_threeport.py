@@ -259,6 +259,7 @@ REFUSED = {
         PortError,
         "termination 3: 2 ports came; needed one",
     ),
+    "plain array": ({"rounds": [np.zeros((3, 3))]}, DeembedError, r"round \?: a ndarray came"),
     "other grid": (
         {"rounds": [*ROUNDS[:2], ROUNDS[2].isel(frequency=slice(40))]},
         GridError,

@@ -86,45 +86,46 @@ def limits(s: xr.DataArray, *, tolerance: float | Mapping[str, float] | None = N
     """
     allowed = tolerances(tolerance)
     s, changed = real_impedance(s)
-    v = s.values
     lead = s.dims[:-2]
-    sv = kernel.singular_values(v)
-    error = kernel.reciprocity_error(v)
-    error_max = error.max(axis=(-2, -1))
-    reflections = kernel.reflection_sum(v)
-    lossless = kernel.lossless_error(sv)
-    match = np.abs(np.diagonal(v, axis1=-2, axis2=-1)).max(axis=-1)
-    flags = [
-        match <= allowed["match"],
-        error_max <= allowed["reciprocity"],
-        lossless <= 2 * allowed["lossless"],  # a wave amplitude e beside 1 is 2 e of power
-    ]
+    values = kernel.singular_values(s.values)
+    error = kernel.reciprocity_error(s.values)
     data = {
-        "singular_values": ((*lead, "rank"), sv),
-        "largest_singular_value": (lead, sv[..., 0]),
-        "smallest_singular_value": (lead, sv[..., -1]),
-        "power_balance": ((*lead, "port_in"), kernel.power_balance(v)),
+        "singular_values": ((*lead, "rank"), values),
+        "largest_singular_value": (lead, values[..., 0]),
+        "smallest_singular_value": (lead, values[..., -1]),
+        "power_balance": ((*lead, "port_in"), kernel.power_balance(s.values)),
         "reciprocity_error": (s.dims, error),
-        "reciprocity_error_max": (lead, error_max),
-        "lossless_error": (lead, lossless),
-        "dissipation": (lead, kernel.dissipation(sv)),
-        "reflection_sum": (lead, reflections),
-        "holds": ((*lead, "property"), np.stack(flags, axis=-1)),
+        "reciprocity_error_max": (lead, error.max(axis=(-2, -1))),
+        "lossless_error": (lead, kernel.lossless_error(values)),
+        "dissipation": (lead, kernel.dissipation(values)),
+        "reflection_sum": (lead, kernel.reflection_sum(s.values)),
     }
     attrs = {
         "reference_impedance": "real part of a complex z0, port by port" if changed else "as given (real)",
         **{f"tolerance_{name}": value for name, value in allowed.items()},
     }
     if len(ports_of(s)) == 3:
-        floor = kernel.three_way_floor(sv)
+        reflections, floor = data["reflection_sum"][1], kernel.three_way_floor(values)
         data["three_way_floor"] = (lead, floor)
         data["three_way_slack"] = (lead, reflections - floor)
         data["dissipation_floor"] = (lead, kernel.dissipation_floor(reflections))
     else:
         attrs["three_way_absent"] = f"the three-way law is for three-ports; this part has {len(ports_of(s))}"
-    coords = {
-        **{str(d): s[d] for d in s.dims if d in s.coords},
-        "rank": np.arange(1, sv.shape[-1] + 1),
-        "property": ["matched", "reciprocal", "lossless"],
-    }
-    return xr.Dataset(data, coords=coords, attrs=attrs).drop_vars("z0", errors="ignore")
+    coords = {str(d): s[d] for d in s.dims if d in s.coords} | {"rank": np.arange(1, values.shape[-1] + 1)}
+    metrics = xr.Dataset(data, coords=coords, attrs=attrs).drop_vars("z0", errors="ignore")
+    return metrics.assign(holds=_holds(s, metrics, allowed))
+
+
+def _holds(s: xr.DataArray, metrics: xr.Dataset, allowed: Mapping[str, float]) -> xr.DataArray:
+    """Which properties the data show within the tolerances; a wave amplitude e beside 1 is 2 e of power."""
+    match = np.abs(np.diagonal(s.values, axis1=-2, axis2=-1)).max(axis=-1)
+    flags = [
+        match <= allowed["match"],
+        metrics.reciprocity_error_max.values <= allowed["reciprocity"],
+        metrics.lossless_error.values <= 2 * allowed["lossless"],
+    ]
+    return xr.DataArray(
+        np.stack(flags, axis=-1),
+        dims=(*s.dims[:-2], "property"),
+        coords={"property": ["matched", "reciprocal", "lossless"]},
+    )

@@ -86,6 +86,11 @@ def test_a_contradiction_of_another_kind_is_told_in_its_own_words():
     assert verdict([redundancy("contradiction")], expect=EXPECT) == "Not believable: the thru disagrees."
 
 
+def test_a_finding_without_a_band_still_makes_a_sentence():
+    bare = Finding("gain-part-1", "gain", "", "contradiction", "Too much; a passive part cannot.")
+    assert verdict([bare], expect=EXPECT) == "Not believable as a passive part at some frequencies: too much."
+
+
 def test_many_places_are_counted_and_bands_of_one_place_joined():
     many = [
         Finding(f"d{k}", "disagreement", f"part port {k}", "warning", "", f0, f0 + 1e9)
