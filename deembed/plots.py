@@ -86,7 +86,13 @@ def _dress(ax: Axes, picture: Picture, style: Theme) -> None:
     for side in ("left", "bottom"):
         ax.spines[side].set_color(style.ink)
     ax.tick_params(colors=style.ink, labelsize=style.text_pt)
-    ax.set_title(picture.title, loc="left", color=style.ink, fontsize=style.text_pt + 1)
+    ax.set_title(
+        picture.title,
+        loc="left",
+        color=style.ink,
+        fontsize=style.text_pt + 1,
+        pad=19 if picture.kind == "lines" else 6,
+    )
 
 
 def figure(
@@ -122,11 +128,11 @@ def figure(
 
 def _frame(picture: Picture, width: float, height: float) -> tuple[float, float, float, float]:
     """Room for the axes: fixed margins, so that pictures below one another line up, and the longest label."""
-    left, top, bottom = 88.0, 36.0, 54.0
+    left, top, bottom = 88.0, 54.0, 54.0
     longest = max((len(t.name) for t in picture.traces), default=0)
     right = 34 + 8.8 * longest
     if picture.kind == "reflection":
-        left, right, bottom = 8.0, 8.0, 34.0
+        left, right, top, bottom = 8.0, 8.0, 36.0, 34.0
     wide, tall = max(width - left - right, 80.0), max(height - top - bottom, 80.0)
     return left / width, bottom / height, wide / width, tall / height
 

@@ -3,114 +3,15 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
 from xml.sax.saxutils import escape, quoteattr
 
+from deembed.plots_lanes_layout import CAPTION, LEFT, ROW, SHAPES, TAB, TOP, Layout, caption, layout_of
 from deembed.plots_style import Theme
 from deembed.views.lane_map import Lane, LaneMap, Segment
 
-__all__ = ["Layout", "lanes_svg", "layout_of", "segment_boxes"]
+__all__ = ["lanes_svg"]
 
 TEXT = 15  # px, 11.25 pt
-_ROW, _TALL, _CAPTION, _GAP, _TOP = 34, 24, 22, 22, 34
-_LEFT, _TAB = 112, 78  # words of the lane, then the analyzer port's tab
-_BREAK_RATIO = 3.5  # error boxes longer than this many arms are drawn short
-SHAPES = {"plain": "", "note": "◇", "warning": "◈", "contradiction": "◆", "absent": ""}
-
-
-@dataclass(frozen=True)
-class Layout:
-    """Where everything goes [px].
-
-    Parameters
-    ----------
-    width, height : float
-    part_x : float
-        The part's plane.
-    px_per_ps : float
-        Scale right of the break.
-    broken_at : float
-        Everything left of this is not to scale; 0 when all of it is.
-    boxes : dict of id to (x, y, width, height)
-        Rectangle of every segment, for pointing at it.
-    rows : dict of part port to (top, middle, bottom)
-    """
-
-    width: float
-    height: float
-    part_x: float
-    px_per_ps: float
-    broken_at: float
-    boxes: dict[str, tuple[float, float, float, float]]
-    rows: dict[int, tuple[float, float, float]]
-
-
-def _scale(lane_map: LaneMap, room: float) -> tuple[float, bool]:
-    """Pixels per picosecond, and whether error boxes must be drawn short."""
-    arms = [s.to_ps - s.from_ps for lane in lane_map.lanes for s in lane.of("arm")]
-    longest = max(arms, default=0.0)
-    if longest > 0 and lane_map.total_ps > (1 + _BREAK_RATIO) * longest:
-        return 0.5 * room / longest, True
-    return (room / lane_map.total_ps if lane_map.total_ps > 0 else 0.0), False
-
-
-def layout_of(lane_map: LaneMap, *, width: float = 960) -> Layout:
-    """Place every segment of a lane map.
-
-    Parameters
-    ----------
-    lane_map : LaneMap
-    width : float
-        [px]
-
-    Returns
-    -------
-    Layout
-    """
-    part_x = width - 190
-    first = _LEFT + _TAB
-    scale, broken = _scale(lane_map, part_x - first)
-    boxes: dict[str, tuple[float, float, float, float]] = {}
-    rows: dict[int, tuple[float, float, float]] = {}
-    y = float(_TOP)
-    for lane in lane_map.lanes:
-        branches = max(len(lane.of("analyzer-port")), 1)
-        top, bottom = y, y + branches * _ROW
-        rows[lane.part_port] = (top, (top + bottom) / 2, bottom)
-        boxes.update(_lane_boxes(lane, rows[lane.part_port], part_x, scale, first if broken else None))
-        y = bottom + _CAPTION + _GAP
-    bottom = y - _GAP
-    boxes["part"] = (part_x + 70, _TOP, 104, bottom - _CAPTION - _TOP)
-    arm_start = min(
-        [part_x + scale * s.from_ps for lane in lane_map.lanes for s in lane.of("arm")] or [part_x]
-    )
-    return Layout(width, bottom + 58, part_x, scale, arm_start - 24 if broken else 0.0, boxes, rows)
-
-
-def _lane_boxes(lane, row, part_x: float, scale: float, short_from: float | None) -> dict:
-    top, middle, bottom = row
-    out = {}
-    for kind in ("analyzer-port", "error-box"):
-        for k, s in enumerate(lane.of(kind)):
-            y = top + k * _ROW + (_ROW - _TALL) / 2
-            end = part_x + scale * s.to_ps
-            start = part_x + scale * s.from_ps if short_from is None else short_from
-            out[s.id] = (start, y, end - start, _TALL)
-            if kind == "analyzer-port":
-                out[s.id] = (start - _TAB, y, _TAB, _TALL)
-    for s in lane.of("cable-plane"):
-        out[s.id] = (part_x + scale * s.from_ps - 5, top - 2, 10, bottom - top + 4)
-    for s in lane.of("arm"):
-        x = part_x + scale * s.from_ps
-        out[s.id] = (x, middle - _TALL / 2, part_x - x, _TALL)
-    for s in lane.of("part-port"):
-        out[s.id] = (part_x + 8, middle - 15, 30, 30)
-    return out
-
-
-def segment_boxes(lane_map: LaneMap, *, width: float = 960) -> dict[str, tuple[float, float, float, float]]:
-    """Rectangle (x, y, width, height) [px] of every segment id, as drawn at this width."""
-    return layout_of(lane_map, width=width).boxes
 
 
 def _text(x: float, y: float, words: str, ink: str, *, anchor: str = "start", more: str = "") -> str:
@@ -205,16 +106,6 @@ def _segment(
     return f'<g class="segment" {known}>{"".join(body)}</g>'
 
 
-def _caption(lane: Lane) -> str:
-    """What is noted along a lane, with shapes, in words."""
-    told: dict[str, None] = {}
-    for s in lane.segments:
-        if s.state not in ("plain", "absent"):
-            name = s.where if s.kind in ("error-box", "analyzer-port") else s.title.lower()
-            told[f"{SHAPES[s.state]} {name}: {s.state_words}"] = None
-    return "   ".join(told)
-
-
 def _ticks(total: float, room: float) -> list[float]:
     """Round distances [ps], about one per 90 px."""
     if total <= 0:
@@ -226,9 +117,11 @@ def _ticks(total: float, room: float) -> list[float]:
 
 
 def _axis(lane_map: LaneMap, at: Layout, style: Theme) -> str:
-    y = at.height - 44
-    first = at.broken_at or _LEFT + _TAB
-    reach = (at.part_x - first) / at.px_per_ps if at.px_per_ps else 0.0
+    y = at.rows_end + 14
+    if at.px_per_ps == 0:
+        return _text(LEFT, y + 21, "no lengths: every plane falls on the part plane", style.ink)
+    first = at.broken_at or LEFT + TAB
+    reach = (at.part_x - first) / at.px_per_ps
     out = [_line(first, y, at.part_x, y, style.ink, 1.2)]
     for t in _ticks(reach, at.part_x - first):
         x = at.part_x - t * at.px_per_ps
@@ -236,7 +129,11 @@ def _axis(lane_map: LaneMap, at: Layout, style: Theme) -> str:
         out.append(_text(x, y + 21, f"{t:g}", style.ink, anchor="middle"))
     words = "electrical distance from the part plane (ps)"
     if at.broken_at:
-        out.append(_text(8, y + 40, "error boxes are cut short at the slanted strokes", style.ink))
+        out.append(
+            _text(
+                at.part_x, y + 60, "error boxes are cut short at the slanted strokes", style.ink, anchor="end"
+            )
+        )
     out.append(_text(at.part_x, y + 40, words, style.ink, anchor="end"))
     return "".join(out)
 
@@ -258,10 +155,15 @@ def _breaks(lane_map: LaneMap, at: Layout, style: Theme) -> str:
 
 
 def _wires(lane: Lane, at: Layout, style: Theme) -> str:
-    """From the arm's end over the part port to the part."""
+    """From arm over part port to part, and from the analyzer to error boxes that start further on."""
     middle = at.rows[lane.part_port][1]
     px = at.boxes["part"][0]
-    return _line(at.part_x, middle, px, middle, style.ink, 2)
+    out = []
+    for s in lane.of("error-box"):
+        x, y, _, h = at.boxes[s.id]
+        if x > LEFT + TAB:
+            out.append(_line(LEFT + TAB, y + h / 2, x, y + h / 2, style.ink, 1.5))
+    return "".join(out) + _line(at.part_x, middle, px, middle, style.ink, 2)
 
 
 def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: Theme) -> str:
@@ -273,22 +175,23 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
         f'patternTransform="rotate(45)"><rect width="7" height="7" fill="{style.paper}"/>'
         f'<line x1="0" y1="0" x2="0" y2="7" stroke="{style.ink}" stroke-width="2.2"/></pattern></defs>'
     ]
-    foot = at.height - 44
-    out.append(_line(at.part_x, _TOP - 10, at.part_x, foot, style.ink, 1.4, dash="10 3"))
-    out.append(_text(at.part_x + 2, _TOP - 14, "part plane", style.ink, anchor="end"))
-    out.append(_text(at.part_x + 10, _TOP - 14, "part port", style.ink))
-    out.append(_text(_LEFT, _TOP - 14, "analyzer", style.ink))
+    foot = at.rows_end + 14
+    out.append(_line(at.part_x, TOP - 10, at.part_x, foot, style.ink, 1.4, dash="10 3"))
+    out.append(_text(at.part_x + 2, TOP - 14, "part plane", style.ink, anchor="end"))
+    out.append(_text(at.part_x + 10, TOP - 14, "part port", style.ink))
+    out.append(_text(LEFT, TOP - 14, "analyzer", style.ink))
     for n, lane in enumerate(lane_map.lanes):
         top, _, bottom = at.rows[lane.part_port]
         out.append(_wires(lane, at, style))
         for k, s in enumerate(lane.of("analyzer-port")):
-            out.append(_text(8, top + k * _ROW + _ROW / 2 + 5, f"round {s.round_label}", style.ink))
+            out.append(_text(8, top + k * ROW + ROW / 2 + 5, f"round {s.round_label}", style.ink))
         cable = at.boxes[lane.of("cable-plane")[0].id]
         if n == 0 and at.part_x - cable[0] > 130:
-            out.append(_text(cable[0] + 5, _TOP - 14, "cable plane", style.ink, anchor="middle"))
+            out.append(_text(cable[0] + 5, TOP - 14, "cable plane", style.ink, anchor="middle"))
         for s in lane.segments:
             out.append(_segment(s, at.boxes[s.id], style, selected=s.id == selected, uid=uid))
-        out.append(_text(_LEFT, bottom + 17, _caption(lane), style.ink, more='font-style="italic"'))
+        for k, line in enumerate(caption(lane, at.part_x + 60)):
+            out.append(_text(LEFT, bottom + 17 + k * CAPTION, line, style.ink, more='font-style="italic"'))
     out.append(_breaks(lane_map, at, style))
     part = lane_map.part
     out.append(_segment(part, at.boxes["part"], style, selected=selected == "part", uid=uid))

@@ -118,7 +118,8 @@ def _limits(ax: Axes, picture: Picture, style: Theme) -> list[Artist]:
         out.append(
             ax.annotate(
                 f"{limit.words} {limit.value:g}", (0.0, limit.value), xycoords=("axes fraction", "data"),
-                xytext=(6, 3), textcoords="offset points", color=style.ink, fontsize=style.text_pt,
+                xytext=(6, 4), textcoords="offset points", color=style.ink, fontsize=style.text_pt,
+                bbox=_backing(style),
             )
         )  # fmt: skip
     return out
@@ -164,26 +165,31 @@ def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: 
     low, high = ax.get_ylim()
     across, height = _points(ax)
     unit = (high - low) / height
+    left, right = ax.get_xlim()
     ends = []
     for t, line in zip(traces, curves, strict=True):
-        x, y = line.get_data()  # type: ignore[attr-defined]
-        inside = np.flatnonzero(np.isfinite(y) & (x <= ax.get_xlim()[1] * (1 + 1e-12)))
-        if inside.size:
-            ends.append((float(np.clip(y[inside[-1]], low, high)), float(x[inside[-1]]), t))
+        x, y = (np.asarray(v) for v in line.get_data())  # type: ignore[attr-defined]
+        good = np.isfinite(y)
+        x, y = x[good], y[good]
+        if x.size and x[0] <= right:
+            end = min(float(x[-1]), right)
+            ends.append((float(np.clip(np.interp(end, x, y), low, high)), end, t))
     ends = sorted(reversed(ends), key=lambda e: round((e[0] - low) / unit))  # first of equals on top
     gap = (style.text_pt + 3) * unit
     spots = _spread([e[0] for e in ends], gap, low, high)
-    right = ax.get_xlim()[1]
     out: list[Artist] = []
-    for (y, x, t), spot in zip(ends, spots, strict=True):
+    for (value, end, t), spot in zip(ends, spots, strict=True):
+        far = end < right - 0.02 * (right - left)  # a line this long would pass for a curve
         out.append(
             ax.annotate(
-                t.name, (min(x, right), y), xytext=(1 + 17 / across, (spot - low) / (high - low)),
+                t.name, (end, value), xytext=(1 + 17 / across, (spot - low) / (high - low)),
                 textcoords="axes fraction", va="center", ha="left", color=style.ink, fontsize=style.text_pt,
                 annotation_clip=False,
                 arrowprops={
-                    "arrowstyle": "-", "color": style.hue(t.hue), "linewidth": 1.7,
-                    "linestyle": DASHES[t.dash % len(DASHES)], "shrinkA": 0, "shrinkB": 0, "relpos": (0, 0.5),
+                    "arrowstyle": "-", "color": style.faint if far else style.hue(t.hue),
+                    "linewidth": 1.0 if far else 1.7,
+                    "linestyle": "dotted" if far else DASHES[t.dash % len(DASHES)],
+                    "shrinkA": 0, "shrinkB": 0, "relpos": (0, 0.5),
                 },
             )
         )  # fmt: skip
@@ -221,8 +227,14 @@ def _cursor(ax: Axes, picture: Picture, cursor: float, scale: float, style: Them
         )  # fmt: skip
     out.append(
         ax.annotate(
-            words.frequency(cursor), (cursor / scale, 0.0), xycoords=("data", "axes fraction"), xytext=(4, 4),
-            textcoords="offset points", color=style.ink, fontsize=style.text_pt, fontweight="bold",
+            words.frequency(cursor), (cursor / scale, 1.0), xycoords=("data", "axes fraction"), va="bottom",
+            xytext=(0, 3), textcoords="offset points", ha="center", color=style.ink,
+            fontsize=style.text_pt, fontweight="bold",
         )
     )  # fmt: skip
     return out
+
+
+def _backing(style: Theme) -> dict:
+    """A sheet behind words that may lie over a curve."""
+    return {"boxstyle": "square,pad=0.1", "facecolor": style.paper, "edgecolor": "none", "alpha": 0.85}

@@ -147,12 +147,13 @@ def lane_map(outcome: Any) -> LaneMap:
 
 def _alt(lanes: Sequence[Lane], part: Segment) -> str:
     told = []
+    count = "1 lane" if len(lanes) == 1 else f"{len(lanes)} lanes"
     for lane in lanes:
         arm = lane.of("arm")[0]
         noted = [f"{s.title}: {s.state_words}" for s in lane.segments if s.state not in ("plain", "absent")]
         length = "no arm" if arm.state == "absent" else f"arm of {arm.to_ps - arm.from_ps:.0f} ps"
         told.append(f"part port {lane.part_port}, {length}{', ' + '; '.join(noted) if noted else ''}")
-    return f"Lane map, {len(lanes)} lanes meeting at the part ({part.state_words}). {'. '.join(told)}."
+    return f"Lane map, {count} meeting at the part ({part.state_words}). {'. '.join(told)}."
 
 
 def _naming(

@@ -138,12 +138,13 @@ def phase(
     s: xr.DataArray,
     *,
     name: str = "part.phase",
-    title: str = "Phase of transmission",
+    title: str = "",
     bands: Sequence[Band] = (),
 ) -> Picture:
     """Phase between different ports [degrees], -180 to 180, not unwrapped; see `magnitude`."""
     f = np.asarray(s.frequency.values, dtype=float)
     which = "through" if s.sizes["port_out"] > 1 else "reflection"
+    title = title or f"Phase of {'transmission' if which == 'through' else 'reflection'}"
     traces = tuple(
         Trace(n, f, np.degrees(np.angle(v)) + 0 * np.abs(v), hue, dash, wraps=True)
         for n, hue, dash, v in entries(s, which=which)
@@ -167,9 +168,9 @@ def delay(
         Trace(n, f, 1e12 * group_delay(v, f, aperture=half), hue, dash)
         for n, hue, dash, v in entries(s, which=which)
     )
-    wide = f[min(2 * half, f.size - 1)] - f[0] if f.size > 1 else 0.0
-    alt = f"{title} over {_over(f)}, aperture {words.frequency(wide)}: {said(traces, 'ps')}."
-    title = f"{title} (aperture {words.frequency(wide, digits=3)})"
+    alt = f"{title} over {_over(f)}: {said(traces, 'ps')}."
+    if f.size > 1:
+        title += f" (aperture {words.frequency(f[min(2 * half, f.size - 1)] - f[0], digits=3)})"
     return Picture(name, title, "Group delay (ps)", traces, "ps", bands=tuple(bands), alt=alt)
 
 
