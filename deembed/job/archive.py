@@ -64,10 +64,10 @@ def write_archive(outcome: Outcome, path: str | Path) -> None:
 def _root(outcome: Outcome) -> xr.Dataset:
     import deembed
 
-    root = _put(
-        outcome.metrics.assign(part=outcome.part.rename(None)), {}, part_attributes=_json(outcome.part.attrs)
-    )
+    root = _put(outcome.metrics.assign(part=outcome.part.rename(None)), {})
     return root.assign_attrs(
+        part_attributes=_json(outcome.part.attrs),
+        part_coords=_json([c for c in outcome.part.coords if c not in outcome.metrics.coords]),
         format_version=FORMAT,
         title=outcome.job.spec.job.title,
         verdict=outcome.verdict,
@@ -135,6 +135,9 @@ def _variable_attrs(data: xr.Dataset) -> dict[str, dict]:
 def _take(node: Any, names: Mapping[str, str]) -> xr.Dataset:
     """The dataset that `_put` was given."""
     data = node.to_dataset(inherit=False).load()
+    # Labels that a group shares with the root are the root's.
+    shared = [d for d in data.dims if d not in data.coords and d in node.coords]
+    data = data.assign_coords({d: node.coords[d].load() for d in shared})
     back = {v: k for k, v in names.items() if v in data.dims or v in data.coords}
     data = data.rename(back)
     for variable in data.variables.values():
@@ -228,7 +231,7 @@ def read_archive(path: Path) -> Outcome:
         return Outcome(
             job=job,
             part=part,
-            metrics=root.drop_vars("part"),
+            metrics=root.drop_vars(["part", *json.loads(tree.attrs["part_coords"])]),
             findings=tuple(Finding.from_dict(f) for f in json.loads(tree.attrs["findings"])),
             blind_spots=tuple(BlindSpot(**b) for b in json.loads(tree.attrs["blind_spots"])),
             verdict=tree.attrs["verdict"],
@@ -247,6 +250,6 @@ def _touchstone(tree: xr.DataTree) -> list[dict]:
 
 
 def _disagreement(tree: xr.DataTree) -> xr.DataArray | None:
-    return (
-        _array(_take(tree["disagreement"], {}), "disagreement") if "disagreement" in tree.children else None
-    )
+    if "disagreement" not in tree.children:
+        return None
+    return _take(tree["disagreement"], {})["disagreement"]

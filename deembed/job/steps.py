@@ -127,7 +127,8 @@ def assembled(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[An
     rounds = got["corrected"]
     result = assemble(rounds, terminations=got["terminations"], part_ports=spec.job.part_ports)
     whole = in_reference(result.part, spec.job.reference_impedance_ohm)
-    return (whole, result.disagreement), tuple(result.findings)
+    disagreement = result.disagreement.rename("disagreement")
+    return (whole.rename(None), disagreement), tuple(result.findings)
 
 
 def shell(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dataset | None, Findings]:
@@ -174,7 +175,7 @@ def part(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Data
     """The part at its own planes."""
     del inputs, place
     whole, _ = got["assembled"]
-    out = strip_to(got["shell"], whole, spec.job.reference_impedance_ohm)
+    out = strip_to(got["shell"], whole, spec.job.reference_impedance_ohm).rename(None)
     bad = ~np.isfinite(out.values).all(axis=(-2, -1))
     bad = bad.reshape(-1, bad.shape[-1]).any(axis=0)
     f = out.frequency.values
