@@ -290,7 +290,7 @@ def test_short_error_boxes_are_drawn_whole(outcome):
     lanes = lane_map(outcome.changed(terms=short))
     at = layout_of(lanes)
     assert at.broken_at == 0
-    x, _, w, _ = at.boxes["lane-1/round-1-2/error-box"]
+    w = at.boxes["lane-1/round-1-2/error-box"][2]
     assert w == pytest.approx(300 * at.px_per_ps, rel=1e-4)
     assert "error boxes are cut short at the slanted strokes" not in texts(lane_map_svg(lanes))
     assert {"0", "100", "200", "300"} <= set(texts(lane_map_svg(lanes)))

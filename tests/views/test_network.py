@@ -75,7 +75,8 @@ def test_alternative_text_states_the_extremes_and_where_they_are():
     values[5, 1, 0], values[9, 0, 1] = 1.0, 0.01
     alt = network.transmission(sparams(values, F)).alt
     assert alt == (
-        "Transmission, magnitude over 1 to 2 GHz: highest 0 dB (S21 at 1.25 GHz), lowest -40 dB (S12 at 1.45 GHz)."
+        "Transmission, magnitude over 1 to 2 GHz: highest 0 dB (S21 at 1.25 GHz), "
+        "lowest -40 dB (S12 at 1.45 GHz)."
     )
 
 
