@@ -83,6 +83,7 @@ def test_ideal_open_or_short_goes_through_the_general_solver(closing):
     g[10:, 1] = 0.2
     got = assemble([read(part, p, g) for p in pairs(3)], pairs(3), [g] * 3, 3)
     assert got.general.tolist() == [True] * 10 + [False] * 10
+    assert got.steps == 1  # it starts at the exact part, since every port met one reflection
     assert np.abs(got.s - part).max() < 1e-11
 
 

@@ -80,6 +80,18 @@ def test_loss_contradicts_lossless():
     assert "a lossless part gives all of it back" in finding.text
 
 
+@pytest.mark.parametrize(
+    ("amplitude", "judged"), [(0.992, False), (0.985, True), (1.008, False), (1.015, True)]
+)
+def test_the_tolerance_is_a_wave_amplitude_for_power_too(amplitude, judged):
+    """One per cent of amplitude is two of power: 0.992 and 1.008 pass, 0.985 and 1.015 do not."""
+    through = sparams(np.broadcast_to(amplitude * np.array([[0, 1], [1, 0]]), (F.size, 2, 2)), F)
+    metrics, findings = assess(through, expect={"passive": True, "lossless": True})
+    assert bool(metrics.holds.sel(property="lossless").all()) != judged
+    assert ("lossless" in kinds(findings)) == judged
+    assert ("power-balance" in kinds(findings)) == ("gain" in kinds(findings)) == (judged and amplitude > 1)
+
+
 def test_what_is_not_expected_is_not_judged():
     def change(s):
         s *= 2

@@ -78,6 +78,15 @@ def test_the_floor_is_said_only_of_reciprocal_points():
     assert "these readings gain 28 %" in note.text
 
 
+def test_the_floor_is_reached_at_every_match():
+    """A through between two ports and a third that only reflects m: its values are 1, 1, m."""
+    for m in (0.0, 0.3, 0.8, 1.0):
+        metrics, _ = assess(constant([[0, 1, 0], [1, 0, 0], [0, 0, m]]))
+        np.testing.assert_allclose(metrics.dissipation_floor, (1 - m * m) / 3, atol=1e-12)
+        np.testing.assert_allclose(metrics.dissipation, metrics.dissipation_floor, atol=1e-12)
+        np.testing.assert_allclose(metrics.three_way_slack, 0, atol=1e-12)
+
+
 def test_parts_that_are_not_three_ports_and_empty_data_say_nothing():
     assert assess(sparams(np.zeros((41, 2, 2)), F))[1] == []
     assert [f.kind for f in assess(constant(np.nan * CIRCULATOR))[1]] == ["not-judged"]
