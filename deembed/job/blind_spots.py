@@ -130,7 +130,8 @@ def _direction(port: int, gone: Sequence[Finding]) -> Finding:
     where = f"arm {port}"
     others = "" if len(gone) == 1 else f", and {len(gone) - 1} more"
     text = (
-        f"Arm {port} looks the wrong way round: turned, it would take away what contradicts the part as written: "
+        f"Arm {port} looks the wrong way round: turned, it would take away what contradicts the part as "
+        f"written: "
         f"{worst.text[0].lower()}{worst.text[1:].rstrip('.')}{others}."
     )
     return Finding(

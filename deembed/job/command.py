@@ -143,5 +143,5 @@ class _Bar:
             from tqdm import tqdm
 
             self._bar = tqdm(total=100, file=sys.stderr, leave=False, bar_format="{l_bar}{bar}| {elapsed}")
-        self._bar.set_description(what, refresh=False)
         self._bar.update(round(100 * fraction) - self._bar.n)
+        self._bar.set_description(what)

@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 from pathlib import Path
+from types import MappingProxyType
 from typing import TYPE_CHECKING, Any
 
 import xarray as xr
 
 from deembed.errors import FileError
-from deembed.findings import sort_findings
+from deembed.findings import Finding, finding_id, sort_findings
 from deembed.job.edit import edited_text
 from deembed.job.inputs import Inputs
 from deembed.job.loading import kit_files, touchstone_files
@@ -124,7 +125,7 @@ class Job:
             cache=Cache() if cache is None else cache,
             progress=progress,
         )
-        findings = sort_findings(f for step in done.values() for f in step.findings)
+        findings = sort_findings(_each_once(f for step in done.values() for f in step.findings))
         spots = done["blind spots"].value
         claims = self.spec.expect.claims()
         assembled, disagreement = done["assembled"].value
@@ -137,13 +138,25 @@ class Job:
             findings=findings,
             blind_spots=spots,
             verdict=verdict(findings, expect=claims, blind_spots=spots),
-            raw=done["load"].value,
+            raw=MappingProxyType(done["load"].value),
             terms=done["terms on the grid"].value,
             rounds=done["corrected"].value,
             assembled=assembled,
             disagreement=disagreement,
             shell=done["shell"].value,
         )
+
+
+def _each_once(findings: Iterable[Finding]) -> list[Finding]:
+    """Findings without repeats; of two that share an id the second gets a number of its own."""
+    kept: dict[str, Finding] = {}
+    for finding in findings:
+        number = 1
+        while finding.id in kept and finding != kept[finding.id]:
+            number += 1
+            finding = replace(finding, id=finding_id(finding.kind, finding.where, number))
+        kept[finding.id] = finding
+    return list(kept.values())
 
 
 def load_job(path: str | Path) -> Job:

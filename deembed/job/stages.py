@@ -175,7 +175,7 @@ STAGES: tuple[Stage, ...] = (
         "looking for what could not have been seen",
         steps.blind_spots,
         ("assembled", "shell", "part", "assessment", "terms on the grid"),
-        lambda spec: [spec.expect, spec.fixture, spec.job, _calibration(spec), spec.calibration.readings],
+        lambda spec: [spec.expect, spec.fixture.arms, spec.job.reference_impedance_ohm, _calibration(spec)],
     ),
 )
 
