@@ -15,7 +15,7 @@ import xarray as xr
 from deembed import words
 from deembed.findings import BlindSpot, Finding, finding_id
 from deembed.job.methods import Mistake, method_named
-from deembed.job.schema import JobFile, tolerance_of
+from deembed.job.schema import JobFile, calibrated_ports, tolerance_of
 from deembed.job.stripping import strip_to
 
 __all__ = ["find_blind_spots", "turn_arm"]
@@ -182,6 +182,6 @@ def _unseen(spec: JobFile, mistake: Mistake, why: str) -> BlindSpot:
         f"{mistake.words[0].upper()}{mistake.words[1:]} would show only if it made the part break a law of "
         f"physics: redundancy is absent because {why}."
     )
-    ports = range(1, spec.analyzer.ports + 1)
+    ports = calibrated_ports(spec)
     where = "" if mistake.cause == "calibration" else ", ".join(f"port {p}" for p in ports)
     return BlindSpot(mistake.cause, where, None, mistake.reading, text)

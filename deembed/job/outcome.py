@@ -145,7 +145,12 @@ class Outcome:
             lines.append(f"input: {name} ({key}) sha256 {self.job.inputs.get(name, key=key).sha256}")
         missing = int(self.part.sizes["frequency"] - writable(self.part).sizes["frequency"])
         if missing:
-            lines.append(f"{missing} frequencies without a value are left out; see findings.json")
+            some = (
+                "1 frequency without a value is"
+                if missing == 1
+                else f"{missing} frequencies without a value are"
+            )
+            lines.append(f"{some} left out; see findings.json")
         return tuple(" ".join(line.split()) for line in lines)
 
 

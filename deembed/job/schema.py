@@ -24,6 +24,7 @@ __all__ = [
     "JobTable",
     "ReadingTable",
     "RoundTable",
+    "calibrated_ports",
     "plain",
     "tolerance_of",
 ]
@@ -201,6 +202,13 @@ class JobFile(_Table):
 def tolerance_of(expect: ExpectTable) -> float | dict[str, float]:
     """Tolerance [wave amplitude]: one number, or one per property."""
     return dict(expect.tolerance) if isinstance(expect.tolerance, Mapping) else expect.tolerance
+
+
+def calibrated_ports(spec: JobFile) -> tuple[int, ...]:
+    """Analyzer ports that standards or rounds use."""
+    on = [reading.ports for reading in spec.calibration.readings]
+    on += [one.analyzer_ports or () for one in spec.rounds]
+    return tuple(sorted({port for ports in on for port in ports}))
 
 
 def plain(value: Any) -> Any:

@@ -18,7 +18,7 @@ from deembed.job import loading, steps, steps_calibration
 from deembed.job.cache import Cache
 from deembed.job.inputs import Inputs
 from deembed.job.places import Place
-from deembed.job.schema import JobFile, plain
+from deembed.job.schema import JobFile, calibrated_ports, plain
 
 __all__ = ["STAGES", "Cache", "Progress", "Stage", "Step", "walk"]
 
@@ -66,7 +66,7 @@ class Stage:
 
 def _calibration(spec: JobFile) -> Any:
     c, a = spec.calibration, spec.analyzer
-    return [c.method, c.isolation, a.ports, a.drive, a.switch_terms]
+    return [c.method, c.isolation, calibrated_ports(spec), a.drive, a.switch_terms]
 
 
 STAGES: tuple[Stage, ...] = (

@@ -15,10 +15,13 @@ from deembed.job.inputs import Inputs, is_shipped_kit
 from deembed.job.methods import Setup, method_named
 from deembed.job.places import Place
 from deembed.job.regrid import bring_onto, same_points
-from deembed.job.schema import JobFile
+from deembed.job.schema import JobFile, calibrated_ports
 from deembed.labels import select_ports
 
 __all__ = ["kit", "readings", "terms", "terms_on_grid"]
+
+# A reading with nothing connected between its ports; it is no standard of the kit.
+ISOLATION = "isolation"
 
 Got = Mapping[str, Any]
 Findings = tuple[Finding, ...]
@@ -68,7 +71,7 @@ def terms(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
     _known_standards(spec, own_kit, place)
     switch, notes = _switch_terms(spec, inputs, own_readings[0].raw.frequency.values)
     setup = Setup(
-        tuple(range(1, spec.analyzer.ports + 1)),
+        calibrated_ports(spec),
         spec.analyzer.drive,
         spec.calibration,
         switch if method.uses_switch_terms else {},
@@ -82,7 +85,7 @@ def terms(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
 
 def _known_standards(spec: JobFile, kit: Any, place: Place) -> None:
     for i, reading in enumerate(spec.calibration.readings):
-        if reading.standard not in kit.standards:
+        if reading.standard not in kit.standards and reading.standard != ISOLATION:
             close = words.nearest(reading.standard, kit.standards)
             raise place.error(
                 ("calibration", "readings", i, "standard"),
@@ -125,6 +128,8 @@ def _unused_switch_terms(spec: JobFile) -> tuple[Finding, ...]:
 def _validity(kit: Any, own_readings: Any) -> list[Finding]:
     found = []
     for reading in own_readings:
+        if reading.standard == ISOLATION:
+            continue
         where = f"{reading.standard} {'-'.join(str(p) for p in reading.ports)}"
         found += kit.validity_findings(reading.standard, reading.raw.frequency.values, where=where)
     return found

@@ -207,25 +207,44 @@ def test_nothing_to_compute_anywhere(bench: Callable, refuse: Refuse, make: dict
     assert re.search("21 frequencies|every frequency|all 21", message), message
 
 
-def test_a_solve_without_solution_at_some_frequencies_is_a_finding_that_names_them(
+def test_a_solve_without_solution_at_some_frequencies_names_them(
+    bench: Callable, refuse: Refuse, make: dict
+) -> None:
+    job = bench(method="solt")
+    f = make["grid"]()
+    short, open_ = (make["read"](make["standard"](n, f), on=(1,)) for n in ("short", "open"))
+    make["save"](job.parent, "raw/short_1.s1p", short.where(short.frequency != f[7], open_))
+    message = refuse(job)
+    assert "1 frequency (1.7 GHz)" in message and "port 1" in message, message
+
+
+def test_an_arm_that_passes_nothing_at_some_frequency_leaves_a_gap_that_is_said(
     bench: Callable, make: dict, tmp_path: Path
 ) -> None:
     from deembed.job import load_job
 
-    job = bench(method="solt")
+    job = bench(method="none")
     f = make["grid"]()
-    short, open_ = (make["read"](make["standard"](n, f), on=(1,)) for n in ("short", "open"))
-    make["save"](job.parent, "raw/short_1.s1p", short.where(f[:, None, None] != f[7], open_))
+    arm = make["arm"](f, 2)
+    through = np.array([[True, False], [False, True]])
+    blocked = arm.copy(data=np.where((f == f[7])[:, None, None] & ~through, 0.0, arm.values))
+    make["save"](job.parent, "fixture/arm_2.s2p", blocked)
     outcome = load_job(job).run()
     bad = ~np.isfinite(outcome.part.values).all(axis=(1, 2))
     assert np.flatnonzero(bad).tolist() == [7]
-    said = [x for x in outcome.findings if "1.7 GHz" in x.text]
-    assert said and all(x.severity in ("warning", "contradiction") for x in said[:1]), outcome.findings
+    (gap,) = [x for x in outcome.findings if x.kind == "not-computed"]
+    assert gap.text == (
+        "The part could not be computed at 1 frequency (1.7 GHz): a step before it has no solution there; "
+        "those values "
+        "are left empty."
+    )
+    assert gap.severity == "warning" and gap.from_hz == gap.to_hz == f[7]
     outcome.write(tmp_path / "out")
     text = (tmp_path / "out/part.s3p").read_text()
-    assert (
-        "1 frequencies without a value are left out; see findings.json" in text and "nan" not in text.lower()
-    )
+    assert "1 frequency without a value is left out; see findings.json" in text and "nan" not in text.lower()
+    make["save"](job.parent, "fixture/arm_2.s2p", arm.where(arm.port_out == arm.port_in, 0.0))
+    with pytest.raises(ValueError, match="nothing could be computed at any of the 21 frequencies"):
+        load_job(job).run()
 
 
 def test_a_standard_outside_its_band_is_a_finding(bench: Callable) -> None:
