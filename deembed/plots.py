@@ -130,7 +130,7 @@ def _frame(picture: Picture, width: float, height: float) -> tuple[float, float,
     """Room for the axes: fixed margins, so that pictures below one another line up, and the longest label."""
     left, top, bottom = 88.0, 54.0, 54.0
     longest = max((len(t.name) for t in picture.traces), default=0)
-    right = 34 + 8.8 * longest
+    right = max(34 + 8.8 * longest, 96.0)
     if picture.kind == "reflection":
         left, right, top, bottom = 8.0, 8.0, 36.0, 34.0
     wide, tall = max(width - left - right, 80.0), max(height - top - bottom, 80.0)

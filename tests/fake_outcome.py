@@ -127,7 +127,11 @@ class FakeJob:
         readings = [
             (f"calibration.readings[{k}].file", r.file) for k, r in enumerate(self.spec.calibration.readings)
         ]
-        return readings + [(f"rounds[{k}].file", r.file) for k, r in enumerate(self.spec.rounds)]
+        rounds = [(f"rounds[{k}].file", r.file) for k, r in enumerate(self.spec.rounds)]
+        arms = [(f"fixture.arms[{k}].file", a.file) for k, a in enumerate(self.spec.fixture.arms)]
+        rest = [(f"terminations.{p}", file) for p, file in self.spec.terminations.items()]
+        kit = [("calibration.kit", "kit.toml"), ("calibration.kit x", "load.s1p")]
+        return [*readings, *rounds, *arms, *rest, *kit]
 
     def get(self, name, *, key):
         return SimpleNamespace(sha256=hashlib.sha256(name.encode()).hexdigest())

@@ -47,7 +47,7 @@ def _drawings(inventory: Inventory, names: Sequence[str]) -> list[Drawing]:
             continue
         picture = inventory[name]
         round_ = picture.kind == "reflection"
-        drawn = svg(picture, width=600 if round_ else 960, height=560 if round_ else 330)
+        drawn = svg(picture, width=600 if round_ else 760, height=560 if round_ else 330)
         missing = f"Without values: {', '.join(picture.missing)}." if picture.missing else ""
         out.append(Drawing(name, Markup(drawn), picture.alt, missing))
     return out
@@ -92,7 +92,7 @@ def report_html(outcome: Any) -> str:
         blind=sentences.blind_lines(outcome),
         unwitnessed=sentences.unwitnessed(outcome),
         lanes=lanes,
-        lanes_svg=Markup(lane_map_svg(lanes, width=1000)),
+        lanes_svg=Markup(lane_map_svg(lanes, width=880)),
         groups=[(heading, drawings) for heading, drawings in groups if drawings],
         no_redundancy="" if outcome.terms is None else redundancy_words(outcome.terms),
         inputs=sentences.input_lines(outcome),

@@ -160,13 +160,18 @@ def _naming(
     findings: Iterable[Finding], answers: Iterable[tuple[str, tuple[int, ...]]], *, lane: int
 ) -> list[Finding]:
     """Findings that name one of these places; one that also names part ports counts in their lanes only."""
-    answers, found = set(answers), []
+    answers, found = set(map(_unordered, answers)), []
     for f in findings:
-        named = [place_ports(p) for p in places(f.where)]
+        named = [_unordered(place_ports(p)) for p in places(f.where)]
         lanes = [ports for what, ports in named if what == "part port"]
         if any(n in answers for n in named) and (not lanes or any(lane in ports for ports in lanes)):
             found.append(f)
     return found
+
+
+def _unordered(place: tuple[str, tuple[int, ...]]) -> tuple[str, tuple[int, ...]]:
+    """Round 3-1 and round 1-3 are one place."""
+    return place[0], tuple(sorted(place[1]))
 
 
 def _lane(
@@ -217,7 +222,7 @@ def _lane(
             round_label=r.label,
             absent="" if outcome.terms is not None else "already corrected by the instrument",
         )
-    labels = {("round", r.part_ports) for r in mine} | {("round", r.part_ports[::-1]) for r in mine}
+    labels = {("round", r.part_ports) for r in mine}
     add(
         "cable-plane",
         f"part port {port}",

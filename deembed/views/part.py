@@ -192,7 +192,7 @@ def three_way(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str = "p
     return Picture(
         name,
         "Three-way law: |S11| + |S22| + |S33| against its floor",
-        "Sum of reflections (wave amplitude)",
+        "Sum (wave amplitude)",
         traces,
         "",
         bands=tuple(bands),

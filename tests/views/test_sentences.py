@@ -60,7 +60,7 @@ def test_facts_keep_what_the_user_typed(outcome):
     assert rows["Part"] == "River-gauge splitter, board <B> (3 ports)"
     assert rows["Note"] == "<script>alert(1)</script>"
     assert rows["Operator"] == 'A. "Ampere"'
-    assert rows["Temperature c"] == "23"
+    assert rows["Temperature (°C)"] == "23"
     assert rows["Rounds (part ports)"] == "1-2, 2-3 and 3-1"
     assert rows["Expected"] == "passive: yes, reciprocal: yes"
     assert "Instrument" not in rows
@@ -71,6 +71,14 @@ def test_inputs_carry_their_hashes(outcome, fake):
     lines = sentences.input_lines(outcome)
     assert [i.name for i in lines] == [name for _, name in outcome.job.input_names()]
     assert all(len(i.sha256) == 64 for i in lines)
+
+
+def test_inputs_say_what_they_were_used_for(outcome):
+    used = [i.used_for for i in sentences.input_lines(outcome)]
+    assert used[0] == "open on port 1"
+    assert used[6] == "thru on ports 1 and 2"
+    assert used[7:10] == ["round 1-2", "round 2-3", "round 3-1"]
+    assert used[10:] == ["arm 1", "arm 2", "arm 3", "termination of part port 3", "kit", "calibration.kit x"]
 
 
 def test_versions_name_what_computed():
