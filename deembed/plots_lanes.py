@@ -108,8 +108,6 @@ def _segment(
 
 def _ticks(total: float, room: float) -> list[float]:
     """Round distances [ps], about one per 90 px."""
-    if total <= 0:
-        return [0.0]
     raw = total / max(room / 90, 1)
     size = 10 ** math.floor(math.log10(raw))
     step = next(m * size for m in (1, 2, 5, 10) if m * size >= raw)

@@ -166,6 +166,15 @@ def test_pictures_of_nothing_say_so():
     assert any("S12 without values" in t for t in texts(svg(p)))
 
 
+def test_a_band_without_values_still_has_axes():
+    y = np.arange(11.0)
+    y[3:8] = np.nan
+    p = Picture("p", "t", "y", (Trace("S11", np.linspace(1e9, 2e9, 11), y),))
+    ax = draw(p, band=(1.42e9, 1.58e9))[0].axes
+    assert ax.get_xlim() == pytest.approx((1.42, 1.58))
+    assert ax.get_ylim()[0] < ax.get_ylim()[1]
+
+
 def test_one_point_is_drawn_as_a_mark():
     p = Picture("p", "t", "y", (Trace("S11", np.array([1e9]), np.array([0.5])),))
     (line, *_) = draw(p)

@@ -157,6 +157,16 @@ def test_a_bare_job_gives_a_whole_page(outcome):
     assert "No findings." in " ".join(parsed.text)
 
 
+def test_a_one_port_part_gives_a_whole_page(outcome, fake):
+    from deembed.labels import sparams
+
+    s = sparams(outcome.part.values[:, :1, :1], outcome.part.frequency.values)
+    one = outcome.changed(part=s, metrics=fake.metrics_of(s), terms=None, shell=None, disagreement=None)
+    drawn = {a["id"] for t, a in outline(report_html(one)).tags if t == "figure" and "id" in a}
+    assert "picture-part-chart" in drawn
+    assert "picture-part-transmission" not in drawn
+
+
 def test_size_at_1601_points(fake):
     assert len(report_html(fake.fake_outcome(1601)).encode()) < 3e6
 

@@ -75,7 +75,9 @@ def test_a_coupled_fixture_shows_its_leakage(outcome, fake):
     coupled = outcome.changed(job=job)
     assert {"fixture.coupling", "arm.1"} <= set(pictures(coupled))
     from deembed.views import lane_map
+    from deembed.views.sentences import facts_rows
 
+    assert dict(facts_rows(coupled))["Fixture"] == "coupled, fixture/all.s6p"
     assert dict(lane_map(coupled).segment("lane-1/arm").holds)["File"] == "fixture/all.s6p (coupled fixture)"
 
 
@@ -88,3 +90,8 @@ def test_a_one_port_part_has_no_pictures_of_pairs(outcome, fake):
     assert "part.reciprocity" not in names
     assert "part.three-way" not in names
     assert {"part.reflection", "part.chart", "part.gain"} <= names
+
+
+def test_line_phase_is_listed_where_the_terms_hold_it(outcome):
+    phased = outcome.terms.assign(line_phase_deg=("frequency", np.linspace(20, 160, 401)))
+    assert "20 to 160 degrees" in pictures(outcome.changed(terms=phased))["terms.line-phase"].alt

@@ -166,3 +166,33 @@ def test_a_plain_through_is_no_arm(outcome, fake):
     assert arm_length(shell, 1)[0] == pytest.approx(212, rel=1e-6)
     assert arm_length(shell, 2) == (0.0, "no arm here: the cable plane is the part's plane")
     assert arm_length(None, 1)[1].startswith("no arm here")
+
+
+def test_what_has_no_value_is_said_where_it_is_held(outcome):
+    terms = outcome.terms.where(False).drop_vars("redundancy").assign_attrs(redundancy_absent="boxes")
+    dead = outcome.shell.copy()
+    dead["inner_outer"] = dead.inner_outer * np.nan
+    metrics = outcome.metrics.where(False)
+    lanes = lane_map(outcome.changed(terms=terms, shell=dead, metrics=metrics, findings=()))
+    box = dict(lanes.segment("lane-1/round-1-2/error-box").holds)
+    assert box["One-way length"] == "could not be estimated from the phase"
+    assert box["Highest directivity"] == "no value"
+    assert box["Redundancy"] == "none: boxes"
+    arm = dict(lanes.segment("lane-1/arm").holds)
+    assert arm["Lowest transmission"] == "no value"
+    assert dict(lanes.segment("lane-1/part-port").holds)["Most power back"] == "not driven"
+    assert "Gain ceiling" not in dict(lanes.part.holds)
+
+
+def test_a_negative_length_is_drawn_as_nothing_and_said(outcome):
+    short = outcome.terms.copy()
+    turn = np.exp(2j * np.pi * outcome.terms.frequency * 2 * 4e-12)
+    short["reflection_tracking"] = (short.reflection_tracking * 0 + turn).transpose("frequency", "port_in")
+    box = lane_map(outcome.changed(terms=short)).segment("lane-1/round-1-2/error-box")
+    assert box.from_ps == box.to_ps
+    assert dict(box.holds)["One-way length"] == "-4.0 ps (drawn as 0)"
+
+
+def test_one_port_terms_still_give_a_length(outcome, fake):
+    alone = outcome.terms[["directivity", "source_match", "reflection_tracking"]]
+    assert box_lengths(alone)[1] == pytest.approx(fake.BOX_PS[1], rel=1e-6)

@@ -65,6 +65,7 @@ def test_chart_holds_real_and_imaginary_part_and_names_the_impedance(s):
     assert p.kind == "reflection"
     assert np.array_equal(p.traces[1].x + 1j * p.traces[1].y, s.sel(port_out=2, port_in=2).values)
     assert "reference 50 ohm" in p.title
+    assert "reference impedance not stated" in network.chart(s.drop_vars("z0")).title
     mixed = sparams(s.values, F, z0=[50, 75, 50])
     assert "reference impedances differ" in network.chart(mixed).title
     assert "reference 50+5j ohm" in network.chart(sparams(s.values, F, z0=50 + 5j)).title
