@@ -16,12 +16,14 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
 from deembed.plots_chart import draw_chart
+from deembed.plots_lanes import lanes_svg
+from deembed.plots_lanes_layout import segment_boxes
 from deembed.plots_lines import draw_lines
 from deembed.plots_style import Theme, theme_of
 from deembed.views.lane_map import LaneMap
 from deembed.views.model import Picture
 
-__all__ = ["draw", "figure", "lane_map_svg", "svg"]
+__all__ = ["draw", "figure", "lane_map_svg", "segment_boxes", "svg"]
 
 _DPI = 96.0  # one pixel of a page
 
@@ -223,6 +225,4 @@ def lane_map_svg(
     DeembedError
         An unknown theme.
     """
-    from deembed.plots_lanes import lanes_svg
-
     return lanes_svg(lane_map, selected=selected, width=width, style=theme_of(theme, lanes=True))

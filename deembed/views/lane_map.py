@@ -10,104 +10,15 @@ import numpy as np
 
 from deembed.findings import Finding
 from deembed.views import lane_holds as holds
-from deembed.views.job_facts import JobFacts, facts_of
+from deembed.views.job_facts import JobFacts, Round, facts_of
 from deembed.views.lane_lengths import arm_length, box_lengths
+from deembed.views.lane_model import KINDS, Lane, LaneMap, Plane, Segment
 from deembed.views.places import place_ports, places, state_of
 
 __all__ = ["KINDS", "Lane", "LaneMap", "Plane", "Segment", "lane_map"]
 
-KINDS = ("analyzer-port", "error-box", "cable-plane", "arm", "part-port", "part")
-
-
-@dataclass(frozen=True)
-class Segment:
-    """One stretch of the signal path that can be chosen.
-
-    Parameters
-    ----------
-    id : str
-        Stable, e.g. ``lane-1/round-1-2/error-box``.
-    kind : str
-        One of `KINDS`.
-    where : str
-        Words as in findings, e.g. ``arm 3``.
-    title : str
-    from_ps, to_ps : float
-        Electrical distance from the part's plane [ps], negative toward the analyzer; equal for planes.
-    state, state_words : str
-        One of `deembed.views.places.STATES`, and what that means here.
-    holds : tuple of (label, value)
-    picture_name : str
-        Key in the inventory of pictures; empty where there is nothing to draw.
-    findings : tuple of str
-        Ids of the findings that name it.
-    round_label : str
-        The round it belongs to; empty for what all rounds share.
-    """
-
-    id: str
-    kind: str
-    where: str
-    title: str
-    from_ps: float
-    to_ps: float
-    state: str
-    state_words: str
-    holds: tuple[tuple[str, str], ...] = ()
-    picture_name: str = ""
-    findings: tuple[str, ...] = ()
-    round_label: str = ""
-
-
-@dataclass(frozen=True)
-class Lane:
-    """The path of one part port; each round that reads it has its own analyzer port and error box."""
-
-    part_port: int
-    segments: tuple[Segment, ...]
-
-    def of(self, kind: str) -> tuple[Segment, ...]:
-        """Segments of one kind, in order of rounds."""
-        return tuple(s for s in self.segments if s.kind == kind)
-
-
-@dataclass(frozen=True)
-class Plane:
-    """A reference plane: a rule across one lane, or (lane None) across all."""
-
-    words: str
-    at_ps: float
-    lane: int | None = None
-
-
-@dataclass(frozen=True)
-class LaneMap:
-    """All lanes, the part they meet at, their planes, and the findings that name no segment."""
-
-    lanes: tuple[Lane, ...]
-    part: Segment
-    planes: tuple[Plane, ...]
-    total_ps: float
-    elsewhere: tuple[Finding, ...]
-    alt: str
-
-    @property
-    def segments(self) -> tuple[Segment, ...]:
-        """Every segment in the order a keyboard walks them; the part comes last."""
-        return (*(s for lane in self.lanes for s in lane.segments), self.part)
-
-    def segment(self, segment_id: str) -> Segment:
-        """The segment with an id.
-
-        Raises
-        ------
-        KeyError
-            No such segment; the message lists those there are.
-        """
-        for s in self.segments:
-            if s.id == segment_id:
-                return s
-        raise KeyError(f"no segment {segment_id!r}; there are {', '.join(s.id for s in self.segments)}")
+Place = tuple[str, tuple[int, ...]]  # what a place names, and which ports
+Rows = tuple[tuple[str, str], ...]
 
 
 def lane_map(outcome: Any) -> LaneMap:
@@ -156,9 +67,7 @@ def _alt(lanes: Sequence[Lane], part: Segment) -> str:
     return f"Lane map, {count} meeting at the part ({part.state_words}). {'. '.join(told)}."
 
 
-def _naming(
-    findings: Iterable[Finding], answers: Iterable[tuple[str, tuple[int, ...]]], *, lane: int
-) -> list[Finding]:
+def _naming(findings: Iterable[Finding], answers: Iterable[Place], *, lane: int) -> list[Finding]:
     """Findings that name one of these places; one that also names part ports counts in their lanes only."""
     answers, found = set(map(_unordered, answers)), []
     for f in findings:
@@ -169,89 +78,131 @@ def _naming(
     return found
 
 
-def _unordered(place: tuple[str, tuple[int, ...]]) -> tuple[str, tuple[int, ...]]:
+def _unordered(place: Place) -> Place:
     """Round 3-1 and round 1-3 are one place."""
     return place[0], tuple(sorted(place[1]))
+
+
+@dataclass(frozen=True)
+class _Lane:
+    """What the segments of one lane are made from."""
+
+    port: int
+    outcome: Any
+    facts: JobFacts
+    findings: Sequence[Finding]
+
+    def segment(
+        self,
+        kind: str,
+        where: str,
+        title: str,
+        span: tuple[float, float],
+        answers: Iterable[Place],
+        *,
+        absent: str = "",
+        round_label: str = "",
+        holds: Rows = (),
+        picture_name: str = "",
+    ) -> Segment:
+        """A segment in the state its findings give it; `answers` are the places it stands for."""
+        state = state_of(_naming(self.findings, answers, lane=self.port), absent=absent)
+        branch = f"round-{round_label}/" if round_label else ""
+        return Segment(
+            id=f"lane-{self.port}/{branch}{kind}",
+            kind=kind,
+            where=where,
+            title=title,
+            from_ps=span[0],
+            to_ps=span[1],
+            state=state.name,
+            state_words=state.words,
+            holds=holds,
+            picture_name=picture_name,
+            findings=state.findings,
+            round_label=round_label,
+        )
+
+    def branch(self, one: Round, start: float, boxes: dict[int, float]) -> list[Segment]:
+        """Analyzer port and error box of one round, up to the cable plane at `start` [ps]."""
+        outcome, facts = self.outcome, self.facts
+        port = one.analyzer_ports[one.part_ports.index(self.port)]
+        length = boxes.get(port, float("nan"))
+        far = start - _drawn(length)
+        named = {place_ports(p) for f in self.findings for p in places(f.where)}
+        standards = {n for n in named if n[0] == "standard" and port in n[1]}
+        corrected = outcome.terms is None
+        socket = self.segment(
+            "analyzer-port",
+            f"port {port}",
+            f"Analyzer port {port} in round {one.label}",
+            (far, far),
+            {("port", (port,)), ("switch", (port,))},
+            round_label=one.label,
+            holds=holds.analyzer_port(outcome, facts, one, port),
+            picture_name=f"raw.{one.files[0]}" if one.files else "",
+        )
+        box = self.segment(
+            "error-box",
+            f"port {port}",
+            f"Error box of analyzer port {port} in round {one.label}",
+            (far, start),
+            {("port", (port,)), *standards},
+            round_label=one.label,
+            holds=holds.error_box(outcome, facts, port, length),
+            picture_name="" if corrected else f"terms.port-{port}",
+            absent="already corrected by the instrument" if corrected else "",
+        )
+        return [socket, box]
+
+    def shared(self, rounds: Sequence[Round], length: float, absent: str) -> list[Segment]:
+        """Cable plane, arm and part port, which every round shares."""
+        outcome, facts, port = self.outcome, self.facts, self.port
+        start = -_drawn(length)
+        cable = self.segment(
+            "cable-plane",
+            f"part port {port}",
+            f"Cable plane at part port {port}",
+            (start, start),
+            {("termination", (port,)), *(("round", r.part_ports) for r in rounds)},
+            holds=holds.cable_plane(outcome, facts, port),
+            picture_name=f"cable-plane.{port}" if rounds else "",
+        )
+        arm = self.segment(
+            "arm",
+            f"arm {port}",
+            f"Arm {port}",
+            (start, 0.0),
+            {("arm", (port,))},
+            absent=absent,
+            holds=holds.arm(outcome, facts, port, length),
+            picture_name="" if absent else f"arm.{port}",
+        )
+        end = self.segment(
+            "part-port",
+            f"part port {port}",
+            f"Part port {port}",
+            (0.0, 0.0),
+            {("part port", (port,))},
+            holds=holds.part_port(outcome, port),
+            picture_name="part.reflection",
+        )
+        return [cable, arm, end]
+
+
+def _drawn(length: float) -> float:
+    """Length a segment is drawn with [ps]: nothing where it is not known or below zero."""
+    return length if np.isfinite(length) and length > 0 else 0.0
 
 
 def _lane(
     port: int, outcome: Any, facts: JobFacts, findings: Sequence[Finding], boxes: dict[int, float]
 ) -> Lane:
-    length, arm_absent = arm_length(outcome.shell, port)
-    start = -max(length, 0.0) if np.isfinite(length) else 0.0
-    mine = [r for r in facts.rounds if port in r.part_ports]
-    segments: list[Segment] = []
-
-    def add(kind: str, where: str, title: str, span: tuple[float, float], answers, **more: Any) -> None:
-        absent = more.pop("absent", "")
-        state = state_of(_naming(findings, answers, lane=port), absent=absent)
-        label = more.get("round_label", "")
-        key = f"lane-{port}/" + (f"round-{label}/" if label else "") + kind
-        segments.append(
-            Segment(key, kind, where, title, *span, state.name, state.words, findings=state.findings, **more)
-        )
-
-    for r in mine:
-        analyzer = r.analyzer_ports[r.part_ports.index(port)]
-        box = boxes.get(analyzer, float("nan"))
-        far = start - (max(box, 0.0) if np.isfinite(box) else 0.0)
-        standards = {
-            n
-            for f in findings
-            for n in map(place_ports, places(f.where))
-            if n[0] == "standard" and analyzer in n[1]
-        }
-        add(
-            "analyzer-port",
-            f"port {analyzer}",
-            f"Analyzer port {analyzer} in round {r.label}",
-            (far, far),
-            {("port", (analyzer,)), ("switch", (analyzer,))},
-            holds=holds.analyzer_port(outcome, facts, r, analyzer),
-            picture_name=f"raw.{r.files[0]}" if r.files else "",
-            round_label=r.label,
-        )
-        add(
-            "error-box",
-            f"port {analyzer}",
-            f"Error box of analyzer port {analyzer} in round {r.label}",
-            (far, start),
-            {("port", (analyzer,)), *standards},
-            holds=holds.error_box(outcome, facts, analyzer, box),
-            picture_name=f"terms.port-{analyzer}" if outcome.terms is not None else "",
-            round_label=r.label,
-            absent="" if outcome.terms is not None else "already corrected by the instrument",
-        )
-    labels = {("round", r.part_ports) for r in mine}
-    add(
-        "cable-plane",
-        f"part port {port}",
-        f"Cable plane at part port {port}",
-        (start, start),
-        labels | {("termination", (port,))},
-        holds=holds.cable_plane(outcome, facts, port),
-        picture_name=f"cable-plane.{port}" if mine else "",
-    )
-    add(
-        "arm",
-        f"arm {port}",
-        f"Arm {port}",
-        (start, 0.0),
-        {("arm", (port,))},
-        absent=arm_absent,
-        holds=holds.arm(outcome, facts, port, length),
-        picture_name="" if arm_absent else f"arm.{port}",
-    )
-    add(
-        "part-port",
-        f"part port {port}",
-        f"Part port {port}",
-        (0.0, 0.0),
-        {("part port", (port,))},
-        holds=holds.part_port(outcome, port),
-        picture_name="part.reflection",
-    )
-    return Lane(port, tuple(segments))
+    made = _Lane(port, outcome, facts, findings)
+    length, absent = arm_length(outcome.shell, port)
+    rounds = [r for r in facts.rounds if port in r.part_ports]
+    branches = [s for r in rounds for s in made.branch(r, -_drawn(length), boxes)]
+    return Lane(port, (*branches, *made.shared(rounds, length, absent)))
 
 
 def _part(outcome: Any, findings: Sequence[Finding]) -> Segment:
