@@ -58,14 +58,16 @@ def validate(text: str, *, name: str = "job.toml") -> JobFile:
     try:
         spec = JobFile.model_validate(data)
     except ValidationError as problems:
-        # A mistyped key also leaves one missing; the mistyped one is what to look at.
-        first = min(
-            problems.errors(),
-            key=lambda e: (e["type"] == "missing", line_of(text, e["loc"]) or 10**9, len(e["loc"])),
-        )
-        raise _said(first, place) from None
+        raise _said(_first(problems.errors(), text), place) from None
     crosscheck(spec, place)
     return spec
+
+
+def _first(problems: list[ErrorDetails], text: str) -> ErrorDetails:
+    """The problem to speak of: the innermost, a mistyped key before the one it leaves missing, then by line."""
+    paths = [p["loc"] for p in problems]
+    inner = [p for p in problems if not any(q[: len(p["loc"])] == p["loc"] != q for q in paths)]
+    return min(inner, key=lambda p: (p["type"] == "missing", line_of(text, p["loc"]) or 10**9, len(p["loc"])))
 
 
 def _tuples(value: Any) -> Any:

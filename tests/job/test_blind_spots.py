@@ -27,7 +27,7 @@ def test_an_arm_that_could_be_either_way_round_is_a_blind_spot_of_true_size(benc
         turned = job.changed({f"fixture.arms[{index}].analyzer_side": 2}).run()
         off = np.abs(turned.part - outcome.part).max(("port_out", "port_in"))
         assert spot.unseen_error_db == pytest.approx(20 * np.log10(float(off.max())), abs=1e-9)
-        at = float(off.frequency[int(off.argmax())]) / 1e9
+        at = float(off.frequency[int(off.values.argmax())]) / 1e9
         assert f"Were {where} the wrong way round, nothing in this job would show it" in spot.text
         assert f"{spot.unseen_error_db:.2f} dB (worst at {at:.4g} GHz)" in spot.text
         assert f"joining arms {where[-1]}" in spot.reading

@@ -8,7 +8,6 @@ from pathlib import Path
 import numpy as np
 import pytest
 import xarray as xr
-from deembed.standards import load_kit
 
 from deembed.job import load_job
 from deembed.job.schema import JobFile
@@ -16,6 +15,7 @@ from deembed.job.validate import validate
 from deembed.labels import relabel_ports, select_ports, sparams
 from deembed.networks import close_ports
 from deembed.shell import embed, shell_from_arms, shell_from_network
+from deembed.standards import load_kit
 
 PAGE = Path(__file__).parents[2] / "docs" / "job-files.md"
 JOBS = re.findall(r"```toml\n(.*?)```", PAGE.read_text(encoding="utf-8"), re.DOTALL)

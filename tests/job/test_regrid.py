@@ -6,6 +6,7 @@ import re
 
 import numpy as np
 import pytest
+import xarray as xr
 
 from deembed.errors import GridError
 from deembed.job.regrid import bring_onto
@@ -56,6 +57,25 @@ def test_a_labelled_array_keeps_its_ports_impedance_and_says_how_good_it_is() ->
         "interpolation, as job.interpolate allows; leaving out every second point, it comes back within "
     )
     assert 0 < note.worst < 1e-4 and own[0] < note.worst_hz < own[-1]
+
+
+def test_a_dataset_brings_over_what_varies_and_leaves_out_flags() -> None:
+    own, target = np.linspace(1e9, 2e9, 5), np.array([1.3e9, 1.6e9])
+    data = xr.Dataset(
+        {
+            "gain": ("frequency", own / 1e9),
+            "phase": ("frequency", np.exp(-2j * np.pi * own * 1e-9)),
+            "length": ((), 3.0),
+            "flag": ("frequency", own > 1.5e9),
+        },
+        coords={"frequency": own},
+        attrs={"method": "solt"},
+    )
+    moved, note = bring_onto(data, target, name="the error terms")
+    assert set(moved.data_vars) == {"gain", "phase", "length"} and moved.attrs == {"method": "solt"}
+    assert moved.gain.dtype == float and np.allclose(moved.gain, target / 1e9)
+    assert np.allclose(moved.phase, np.exp(-2j * np.pi * target * 1e-9))
+    assert moved.length == 3.0 and note.worst is None and note.text.endswith("as job.interpolate allows.")
 
 
 def test_nothing_is_extrapolated() -> None:

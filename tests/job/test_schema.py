@@ -8,7 +8,7 @@ import pytest
 
 from deembed.errors import JobError
 from deembed.job.places import line_of, parse_path, path_words
-from deembed.job.schema import FrozenMap, plain
+from deembed.job.schema import FrozenMap, plain, tolerance_of
 from deembed.job.validate import validate
 
 GOOD = """\
@@ -267,6 +267,114 @@ def test_seats_follow_the_analyzer_ports() -> None:
 def test_what_cannot_be_is_refused_in_one_whole_sentence(old: str, new: str, message: str) -> None:
     assert old in GOOD
     refuse(GOOD.replace(old, new), message)
+
+
+NONE = """\
+[job]
+part_ports = 2
+[analyzer]
+ports = 2
+[calibration]
+method = "none"
+[[rounds]]
+file = "part.s2p"
+part_ports = [1, 2]
+[fixture.coupled]
+file = "board.s4p"
+analyzer_side_ports = [1, 2]
+part_side_ports = [3, 4]
+[terminations]
+1 = "t.s1p"
+[expect]
+tolerance = { gain = 0.005, match = 0.1 }
+"""
+
+
+def test_a_tolerance_per_property_and_a_coupled_fixture_are_taken() -> None:
+    spec = validate(NONE)
+    assert dict(spec.expect.tolerance) == tolerance_of(spec.expect) == {"gain": 0.005, "match": 0.1}
+    assert spec.fixture.coupled.part_side_ports == (3, 4)
+    assert repr(spec.terminations) == "FrozenMap({1: 't.s1p'})"
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "message"),
+    [
+        (
+            "part_side_ports = [3, 4]",
+            "part_side_ports = [3]",
+            "job.toml, line 13, fixture.coupled.part_side_ports: [3] came for a part with 2 ports. "
+            "Name one port of the file per part port, in the order of the part ports.",
+        ),
+        (
+            "part_side_ports = [3, 4]",
+            "part_side_ports = [3, 2]",
+            "job.toml, line 13, fixture.coupled.part_side_ports: analyzer side [1, 2] and part side [3, 2] "
+            "do not name "
+            "each of the ports 1 to 4 once. Correct the port map.",
+        ),
+        (
+            "part_ports = [1, 2]",
+            "part_ports = [2]",
+            "job.toml, line 9, rounds[0].part_ports: [2] reads one port alone of a part with 2 ports. "
+            "Read at least two ports at a time.",
+        ),
+        (
+            "part_ports = [1, 2]",
+            "part_ports = []",
+            "job.toml, line 9, rounds[0].part_ports: it is empty; needed at least one entry",
+        ),
+        (
+            "part_ports = [1, 2]",
+            "part_ports = [0, 2]",
+            "job.toml, line 9, rounds[0].part_ports[0]: 0 came; input should be greater than or equal to 1",
+        ),
+        (
+            '1 = "t.s1p"',
+            "1 = 0.5",
+            "job.toml, line 14, terminations: has 0.5 for port 1; needed the name of a file",
+        ),
+        (
+            "[analyzer]\nports = 2",
+            "[analyzer]\nswitch_terms = 3",
+            'job.toml, line 4, analyzer.switch_terms: must be a table such as { 3 = "raw/file_3.s1p" }',
+        ),
+        (
+            'method = "none"',
+            'method = "solt"\nkit = "ideal"',
+            "job.toml, line 5, calibration: method 'solt' needs readings of standards and there are none. "
+            "Add one [[calibration.readings]] table per standard.",
+        ),
+    ],
+)
+def test_what_else_cannot_be(old: str, new: str, message: str) -> None:
+    assert old in NONE
+    refuse(NONE.replace(old, new), message)
+
+
+def test_one_analyzer_port_cannot_read_more() -> None:
+    text = GOOD.replace("ports = 2\n", "ports = 1\n", 1)
+    refuse(
+        text,
+        "job.toml, line 6, analyzer.ports: one analyzer port cannot read a part with 3 ports. "
+        "Correct analyzer.ports or job.part_ports.",
+    )
+
+
+def test_the_two_directions_of_a_round_have_one_termination() -> None:
+    back = ""
+    for i, two in enumerate(([2, 1], [3, 2], [1, 3])):
+        back += f'[[rounds]]\nfile = "back_{i}.s2p"\nanalyzer_ports = [1, 2]\npart_ports = {two}\n'
+    text = GOOD.replace('"every-port"', '"first-port-only"').replace(
+        "[terminations]", f"{back}\n[terminations]"
+    )
+    validate(text)
+    refuse(
+        text.replace("part_ports = [1, 2]\n", 'part_ports = [1, 2]\nterminations = { 3 = "raw/x.s1p" }\n'),
+        "job.toml, line 21, rounds[0].terminations: rounds 1-2 and 2-1 are the two directions of one round "
+        "and name "
+        "different terminations. Give both the same.",
+    )
 
 
 def test_a_pair_never_read_is_named() -> None:
