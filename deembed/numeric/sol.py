@@ -1,0 +1,54 @@
+"""One-port calibration from three or more known reflections."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from deembed.numeric.linalg import inverse
+
+__all__ = ["reflection_terms", "seen_reflection"]
+
+
+def reflection_terms(
+    measured: NDArray, known: NDArray, weights: NDArray | None = None
+) -> tuple[NDArray, NDArray, NDArray]:
+    """Directivity, source match and reflection tracking from known reflections.
+
+    Parameters
+    ----------
+    measured : complex array of shape (..., standard)
+        Readings.
+    known : complex array of shape (..., standard)
+        True reflections.
+    weights : array of shape (..., standard), optional
+        Weight of each equation in the least squares (inverse standard deviation); equal when not given.
+
+    Returns
+    -------
+    directivity, source_match, reflection_tracking : complex arrays of shape (...)
+        Exact for three standards, least squares for more; NaN where the standards do not differ enough.
+
+    References
+    ----------
+    Rytting 2001, ARFTG short course: M = e00 + G M e11 - G (e00 e11 - e10e01), linear in its unknowns.
+    """
+    rows = np.stack([np.ones_like(measured * known), known * measured, -known], axis=-1)
+    right = (measured * np.ones_like(known))[..., None]
+    if weights is not None:
+        rows, right = rows * weights[..., None], right * weights[..., None]
+    if rows.shape[-2] > 3:
+        adjoint = rows.conj().swapaxes(-1, -2)
+        rows, right = adjoint @ rows, adjoint @ right
+    x = (inverse(rows) @ right)[..., 0]
+    directivity, source_match = x[..., 0], x[..., 1]
+    return directivity, source_match, directivity * source_match - x[..., 2]
+
+
+def seen_reflection(
+    measured: NDArray, directivity: NDArray, source_match: NDArray, reflection_tracking: NDArray
+) -> NDArray:
+    """True reflection behind an error box: ``(M - e00) / (e10e01 + e11 (M - e00))``, broadcast."""
+    rest = measured - directivity
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return rest / (reflection_tracking + source_match * rest)
