@@ -5,13 +5,13 @@ import warnings
 import numpy as np
 import pytest
 import skrf
-from deembed.standards import load_kit
-from deembed.touchstone import read_touchstone
 
 from deembed.calibration import Reading, correct, solve_solt
 from deembed.labels import ports_of, relabel_ports, select_ports
 from deembed.physicality import assess, verdict
+from deembed.standards import load_kit
 from deembed.threeport import assemble
+from deembed.touchstone import read_touchstone
 
 EXPECT = {"passive": True, "reciprocal": True, "lossless": False}
 CYCLIC = ((1, 2), (2, 3), (3, 1))
