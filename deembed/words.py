@@ -8,7 +8,17 @@ from collections.abc import Iterable
 import numpy as np
 from numpy.typing import ArrayLike
 
-__all__ = ["band", "decibel", "frequency", "grid", "listed", "nearest", "percent", "some_frequencies"]
+__all__ = [
+    "band",
+    "decibel",
+    "frequency",
+    "grid",
+    "listed",
+    "nearest",
+    "percent",
+    "some_frequencies",
+    "times",
+]
 
 _UNITS = ((1e9, "GHz"), (1e6, "MHz"), (1e3, "kHz"), (1.0, "Hz"))
 
@@ -75,6 +85,11 @@ def percent(ratio: float) -> str:
     if value != 0 and abs(value) < 1e-4:
         return f"{value:.1e} %"
     return f"{float(f'{value:.2g}'):g} %"
+
+
+def times(factor: float) -> str:
+    """A factor in words, e.g. ``12 times``."""
+    return f"{factor:.3g} times"
 
 
 def listed(words: Iterable[object], *, last: str = "and") -> str:
