@@ -2,11 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
-from itertools import combinations, permutations
-
 from deembed import words
-from deembed.job.methods import METHODS, method_named
+from deembed.job.crosscheck_rounds import coverage, known_ports, ports_in_words, rounds
+from deembed.job.methods import ISOLATION, METHODS, Method, method_named
 from deembed.job.places import Place
 from deembed.job.schema import JobFile
 
@@ -28,15 +26,10 @@ def crosscheck(spec: JobFile, place: Place) -> None:
     """
     _analyzer(spec, place)
     _calibration(spec, place)
-    _rounds(spec, place)
-    _coverage(spec, place)
+    rounds(spec, place)
+    coverage(spec, place)
     _terminations(spec, place)
     _fixture(spec, place)
-
-
-def pair(ports: Iterable[int]) -> str:
-    """Ports in the words of findings: ``1-2``."""
-    return "-".join(str(p) for p in ports)
 
 
 def _analyzer(spec: JobFile, place: Place) -> None:
@@ -45,19 +38,15 @@ def _analyzer(spec: JobFile, place: Place) -> None:
         if port > analyzer.ports:
             raise place.error(
                 ("analyzer", "switch_terms", str(port)),
-                f"switch terms for port {port}, but the analyzer has {_ports(analyzer.ports)}",
+                f"switch terms for port {port}, but the analyzer has {ports_in_words(analyzer.ports)}",
                 "Correct the port or analyzer.ports.",
             )
     if analyzer.drive == "first-port-only" and analyzer.ports != 2:
         raise place.error(
             ("analyzer", "drive"),
-            f'"first-port-only" came with an analyzer of {_ports(analyzer.ports)}; it is for two',
+            f'"first-port-only" came with an analyzer of {ports_in_words(analyzer.ports)}; it is for two',
             "Set analyzer.ports = 2.",
         )
-
-
-def _ports(count: int) -> str:
-    return "1 port" if count == 1 else f"{count} ports"
 
 
 def _calibration(spec: JobFile, place: Place) -> None:
@@ -94,117 +83,34 @@ def _calibration(spec: JobFile, place: Place) -> None:
             f"readings of standards came with method {calibration.method!r}, which uses none",
             "Remove them, or name the method that they belong to.",
         )
+    _unused(spec, method, place)
     for i, reading in enumerate(calibration.readings):
-        _known_ports(reading.ports, analyzer.ports, ("calibration", "readings", i, "ports"), place)
+        known_ports(reading.ports, analyzer.ports, ("calibration", "readings", i, "ports"), place)
     if method.check is not None:
         method.check(spec, place)
 
 
-def _known_ports(ports: tuple[int, ...], most: int, path: tuple[str | int, ...], place: Place) -> None:
-    if max(ports) > most:
+def _unused(spec: JobFile, method: Method, place: Place) -> None:
+    """What is given and would not be used is a misunderstanding, not a detail."""
+    calibration = spec.calibration
+    if not method.kit and calibration.kit is not None:
         raise place.error(
-            path,
-            f"{list(ports)} names analyzer port {max(ports)}, but the analyzer has {_ports(most)}",
-            "Correct it, or analyzer.ports.",
+            ("calibration", "kit"),
+            f"a kit came with method {calibration.method!r}, which uses none",
+            "Remove it, or name the method that it belongs to.",
         )
-    _once(ports, path, place)
-
-
-def _once(ports: tuple[int, ...], path: tuple[str | int, ...], place: Place) -> None:
-    if len(set(ports)) != len(ports):
-        raise place.error(path, f"{list(ports)} names a port twice", "Name each port once.")
-
-
-def _rounds(spec: JobFile, place: Place) -> None:
-    for i, one in enumerate(spec.rounds):
-        path = ("rounds", i)
-        _once(one.part_ports, (*path, "part_ports"), place)
-        if max(one.part_ports) > spec.job.part_ports:
-            raise place.error(
-                (*path, "part_ports"),
-                f"{list(one.part_ports)} names part port {max(one.part_ports)}, "
-                f"but the part has {_ports(spec.job.part_ports)}",
-                "Correct it, or job.part_ports.",
-            )
-        if one.analyzer_ports is None:
-            if spec.calibration.method != "none":
-                raise place.error(
-                    (*path, "analyzer_ports"), "this key is missing", "Add it, for example [1, 2]."
-                )
-        else:
-            _known_ports(one.analyzer_ports, spec.analyzer.ports, (*path, "analyzer_ports"), place)
-            if len(one.analyzer_ports) != len(one.part_ports):
-                raise place.error(
-                    (*path, "part_ports"),
-                    f"{list(one.part_ports)} came for analyzer_ports {list(one.analyzer_ports)}",
-                    "Name one part port per analyzer port, in the same order.",
-                )
-        if len(one.part_ports) == 1 < spec.job.part_ports:
-            raise place.error(
-                (*path, "part_ports"),
-                f"{list(one.part_ports)} reads one port alone of a part with {_ports(spec.job.part_ports)}",
-                "Read at least two ports at a time.",
-            )
-    _repeats(spec, place)
-
-
-def _repeats(spec: JobFile, place: Place) -> None:
-    seen: dict[tuple[int, ...], int] = {}
-    ordered = spec.analyzer.drive == "first-port-only"
-    for i, one in enumerate(spec.rounds):
-        key = one.seats() if ordered else tuple(sorted(one.part_ports))
-        if key in seen:
-            first = spec.rounds[seen[key]]
-            raise place.error(
-                ("rounds", i, "part_ports"),
-                f"two rounds for the same part ports {pair(one.part_ports)}: "
-                f"{first.file} (rounds[{seen[key]}]) and {one.file}",
-                "Keep one of them, or correct part_ports.",
-            )
-        seen[key] = i
-
-
-def _coverage(spec: JobFile, place: Place) -> None:
-    ports = range(1, spec.job.part_ports + 1)
-    read = {p for one in spec.rounds for p in one.part_ports}
-    never = [p for p in ports if p not in read]
-    if never:
+    if calibration.isolation and not method.uses_isolation:
         raise place.error(
-            ("rounds",),
-            f"part {'port' if len(never) == 1 else 'ports'} {words.listed(never)} "
-            f"{'is' if len(never) == 1 else 'are'} never read; "
-            f"the rounds are {words.listed(pair(one.part_ports) for one in spec.rounds)}",
-            "Add rounds that read every pair of part ports.",
+            ("calibration", "isolation"),
+            f"method {calibration.method!r} takes no leakage out",
+            "Set isolation = false, or use solt.",
         )
-    if spec.analyzer.drive == "first-port-only":
-        _both_directions(spec, place)
-    done = {frozenset(two) for one in spec.rounds for two in combinations(one.part_ports, 2)}
-    missing = [two for two in combinations(ports, 2) if frozenset(two) not in done]
-    if missing:
-        raise place.error(
-            ("rounds",),
-            f"no round reads part ports {words.listed(pair(two) for two in missing)}",
-            f"Add a round with part_ports = {list(missing[0])}.",
-        )
-
-
-def _both_directions(spec: JobFile, place: Place) -> None:
-    done = {one.seats(): i for i, one in enumerate(spec.rounds)}
-    for ports, i in done.items():
-        turned = [other for other in permutations(ports) if other != ports and other in done]
-        if len(ports) == 2 and not turned:
+    for i, reading in enumerate(calibration.readings):
+        if reading.standard == ISOLATION and not calibration.isolation:
             raise place.error(
-                ("rounds", i, "part_ports"),
-                f"only the first port drives, and the sweep of the turned part to round {pair(ports)} "
-                "is missing",
-                f"Add a round with part_ports = {list(ports[::-1])}.",
-            )
-        if turned and spec.rounds[done[turned[0]]].terminations != spec.rounds[i].terminations:
-            raise place.error(
-                ("rounds", i, "terminations"),
-                f"rounds {pair(ports)} and {pair(turned[0])} are the two directions of one round "
-                "and name different terminations",
-                "Give both the same.",
+                ("calibration", "readings", i, "standard"),
+                "an isolation reading came and calibration.isolation is false",
+                "Set isolation = true, or remove the reading.",
             )
 
 
@@ -227,7 +133,7 @@ def _termination(port: int, spec: JobFile, path: tuple[str | int, ...], place: P
     if port > spec.job.part_ports:
         raise place.error(
             path,
-            f"a termination for part port {port}, but the part has {_ports(spec.job.part_ports)}",
+            f"a termination for part port {port}, but the part has {ports_in_words(spec.job.part_ports)}",
             "Correct the port or job.part_ports.",
         )
 
@@ -246,7 +152,7 @@ def _fixture(spec: JobFile, place: Place) -> None:
         if arm.part_port > count:
             raise place.error(
                 path,
-                f"an arm for part port {arm.part_port}, but the part has {_ports(count)}",
+                f"an arm for part port {arm.part_port}, but the part has {ports_in_words(count)}",
                 "Correct the port or job.part_ports.",
             )
         if arm.part_port in seen:
@@ -270,7 +176,7 @@ def _coupled(spec: JobFile, place: Place) -> None:
         if len(ports) != count:
             raise place.error(
                 ("fixture", "coupled", key),
-                f"{list(ports)} came for a part with {_ports(count)}",
+                f"{list(ports)} came for a part with {ports_in_words(count)}",
                 "Name one port of the file per part port, in the order of the part ports.",
             )
     if sorted(both) != list(range(1, 2 * count + 1)):

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
     from deembed.calibration.reading import Reading
     from deembed.standards import Kit
 
-__all__ = ["METHODS", "Method", "Mistake", "Setup", "method_named"]
+__all__ = ["ISOLATION", "METHODS", "Method", "Mistake", "Setup", "method_named"]
 
 
 @dataclass(frozen=True)
@@ -51,6 +51,9 @@ class Mistake:
     words: str
     reading: str
 
+
+# A reading with nothing connected between its ports; it is no standard of the kit.
+ISOLATION = "isolation"
 
 Solver = Callable[[Sequence["Reading"], "Kit", Setup], xr.Dataset]
 _EVERY = ("every-port",)
@@ -135,8 +138,8 @@ class Method:
         Checks across the job file that this method alone needs.
     mistakes : tuple of Mistake
         What no one can see for certain where redundancy is absent.
-    uses_switch_terms : bool
-        Whether recorded switch terms go into the terms.
+    uses_switch_terms, uses_isolation : bool
+        Whether recorded switch terms, and leakage between ports, go into the terms.
     """
 
     solve: Solver | None
@@ -145,12 +148,20 @@ class Method:
     check: Callable[[JobFile, Place], None] | None = None
     mistakes: tuple[Mistake, ...] = ()
     uses_switch_terms: bool = False
+    uses_isolation: bool = False
 
 
 METHODS: Mapping[str, Method] = {
     "none": Method(None, kit=False, drives=_EVERY, mistakes=(_ELSEWHERE,)),
     "sol": Method(_solve_sol, kit=True, drives=_BOTH, check=_check_sol, mistakes=(_EXCHANGED,)),
-    "solt": Method(_solve_solt, kit=True, drives=_BOTH, check=_check_pairs, mistakes=(_EXCHANGED, _THRU)),
+    "solt": Method(
+        _solve_solt,
+        kit=True,
+        drives=_BOTH,
+        check=_check_pairs,
+        mistakes=(_EXCHANGED, _THRU),
+        uses_isolation=True,
+    ),
     "trl": Method(
         _solve_trl,
         kit=True,

@@ -134,9 +134,6 @@ def assembled(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[An
 def shell(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dataset | None, Findings]:
     """The fixture as a shell on the part's grid; None where there is none."""
     del place
-    from deembed.fixture.arms import arms_shell
-    from deembed.fixture.coupled import coupled_shell
-
     notes: list[Finding] = []
     ports = tuple(range(1, spec.job.part_ports + 1))
 
@@ -150,6 +147,8 @@ def shell(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
 
     fixture = spec.fixture
     if fixture.coupled is not None:
+        from deembed.fixture.coupled import coupled_shell
+
         network = here(fixture.coupled.file, "fixture.coupled.file", "the fixture", "")
         built, found = coupled_shell(
             network,
@@ -160,6 +159,8 @@ def shell(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
         return built, (*found, *notes)
     if not fixture.arms:
         return None, ()
+    from deembed.fixture.arms import arms_shell
+
     arms = {}
     for i, arm in enumerate(fixture.arms):
         where = f"arm {arm.part_port}"

@@ -12,16 +12,13 @@ from deembed import words
 from deembed.findings import Finding, finding_id, findings_of
 from deembed.job import loading
 from deembed.job.inputs import Inputs, is_shipped_kit
-from deembed.job.methods import Setup, method_named
+from deembed.job.methods import ISOLATION, Setup, method_named
 from deembed.job.places import Place
 from deembed.job.regrid import bring_onto, same_points
 from deembed.job.schema import JobFile, calibrated_ports
 from deembed.labels import select_ports
 
 __all__ = ["kit", "readings", "terms", "terms_on_grid"]
-
-# A reading with nothing connected between its ports; it is no standard of the kit.
-ISOLATION = "isolation"
 
 Got = Mapping[str, Any]
 Findings = tuple[Finding, ...]

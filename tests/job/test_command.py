@@ -12,10 +12,10 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from deembed.touchstone import read_touchstone
 
 from deembed.job import command, load_job, open_outcome
 from deembed.job.command import main
+from deembed.touchstone import read_touchstone
 
 Bench = Callable[..., Path]
 FILES = ["findings.json", "outcome.nc", "part.s3p", "report.html"]

@@ -120,6 +120,22 @@ def test_whole_sweeps_may_stand_for_one_port(bench: Bench, truth: Truth, make: d
     assert off(job.changed(edits).run(), truth()) < 1e-12
 
 
+def test_leakage_is_taken_out_where_the_job_says_so(bench: Bench, truth: Truth, make: dict) -> None:
+    path = bench(method="solt")
+    job = load_job(path)
+    apart = np.array([[0, 0.02], [0.03j, 0]])
+    for name in ("raw/thru_12.s2p", "raw/part_12.s2p", "raw/part_23.s2p", "raw/part_31.s2p"):
+        make["save"](path.parent, name, job.inputs.sparams(name, key="") + apart)
+    f = make["grid"]()
+    loads = make["read"](sparams(np.zeros((f.size, 2, 2)), f), on=(1, 2))
+    make["save"](path.parent, "raw/isolation.s2p", loads + apart)
+    assert off(load_job(path).run(), truth()) > 1e-3
+    count = len(job.spec.calibration.readings)
+    reading = {"standard": "isolation", "ports": [1, 2], "file": "raw/isolation.s2p"}
+    edits = {f"calibration.readings[{count}]": reading, "calibration.isolation": True}
+    assert off(load_job(path).changed(edits).run(), truth()) < 1e-12
+
+
 def test_the_reference_impedance_of_the_result(bench: Bench, truth: Truth) -> None:
     from deembed.networks import renormalize
 

@@ -352,6 +352,33 @@ def test_what_else_cannot_be(old: str, new: str, message: str) -> None:
     refuse(NONE.replace(old, new), message)
 
 
+@pytest.mark.parametrize(
+    ("old", "new", "message"),
+    [
+        (
+            'method = "solt"',
+            'method = "trl"\nisolation = true',
+            "job.toml, line 11, calibration.isolation: method 'trl' takes no leakage out. "
+            "Set isolation = false, or use solt.",
+        ),
+        (
+            'standard = "open"',
+            'standard = "isolation"',
+            "job.toml, line 13, calibration.readings[0].standard: an isolation reading came and "
+            "calibration.isolation is "
+            "false. Set isolation = true, or remove the reading.",
+        ),
+    ],
+)
+def test_what_would_not_be_used_is_refused(old: str, new: str, message: str) -> None:
+    refuse(GOOD.replace(old, new), message)
+    refuse(
+        NONE.replace('method = "none"', 'method = "none"\nkit = "ideal"'),
+        "job.toml, line 7, calibration.kit: a kit came with method 'none', which uses none. "
+        "Remove it, or name the method that it belongs to.",
+    )
+
+
 def test_one_analyzer_port_cannot_read_more() -> None:
     text = GOOD.replace("ports = 2\n", "ports = 1\n", 1)
     refuse(
