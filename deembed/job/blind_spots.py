@@ -8,15 +8,19 @@ written, and a finding.
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import TYPE_CHECKING
 
 import numpy as np
 import xarray as xr
 
 from deembed import words
 from deembed.findings import BlindSpot, Finding, finding_id
-from deembed.job.methods import Mistake, method_named
-from deembed.job.schema import JobFile, calibrated_ports, tolerance_of
+from deembed.job.methods import ISOLATION, Mistake, method_named
+from deembed.job.schema import JobFile, tolerance_of
 from deembed.job.stripping import strip_to
+
+if TYPE_CHECKING:
+    from deembed.standards import Kit
 
 __all__ = ["find_blind_spots", "turn_arm"]
 
@@ -34,6 +38,7 @@ def find_blind_spots(
     part: xr.DataArray,
     findings: Sequence[Finding],
     terms: xr.Dataset | None,
+    kit: Kit | None,
 ) -> tuple[tuple[BlindSpot, ...], tuple[Finding, ...]]:
     """Mistakes that would leave no trace in this job, and arms that look the wrong way round.
 
@@ -50,6 +55,7 @@ def find_blind_spots(
         What physics says of the part as the job is written.
     terms : Dataset or None
         Error terms.
+    kit : Kit or None
 
     Returns
     -------
@@ -61,7 +67,7 @@ def find_blind_spots(
         spot, finding = _arm(spec, arm.part_port, whole, shell, part, findings)
         spots += [spot] if spot else []
         found += [finding] if finding else []
-    return (*spots, *_calibration(spec, terms)), tuple(found)
+    return (*spots, *_calibration(spec, terms, kit)), tuple(found)
 
 
 def turn_arm(shell: xr.Dataset, port: int) -> xr.Dataset:
@@ -160,12 +166,12 @@ def _reversed(spec: JobFile, port: int, worst: float, at: float) -> BlindSpot:
     return BlindSpot("arm-reversed", f"arm {port}", float(20 * np.log10(worst)), reading, text)
 
 
-def _calibration(spec: JobFile, terms: xr.Dataset | None) -> tuple[BlindSpot, ...]:
+def _calibration(spec: JobFile, terms: xr.Dataset | None, kit: Kit | None) -> tuple[BlindSpot, ...]:
     why = _absent(terms)
     if why is None:
         return ()
     mistakes = method_named(spec.calibration.method).mistakes
-    return tuple(_unseen(spec, mistake, why) for mistake in mistakes)
+    return tuple(_unseen(spec, mistake, why, kit) for mistake in mistakes)
 
 
 def _absent(terms: xr.Dataset | None) -> str | None:
@@ -177,11 +183,23 @@ def _absent(terms: xr.Dataset | None) -> str | None:
     return str(terms.attrs.get("redundancy_absent", "the method leaves none")).rstrip(".")
 
 
-def _unseen(spec: JobFile, mistake: Mistake, why: str) -> BlindSpot:
+def _unseen(spec: JobFile, mistake: Mistake, why: str, kit: Kit | None) -> BlindSpot:
     text = (
         f"{mistake.words[0].upper()}{mistake.words[1:]} would show only if it made the part break a law of "
         f"physics: redundancy is absent because {why}."
     )
-    ports = calibrated_ports(spec)
-    where = "" if mistake.cause == "calibration" else ", ".join(f"port {p}" for p in ports)
-    return BlindSpot(mistake.cause, where, None, mistake.reading, text)
+    return BlindSpot(mistake.cause, _places(spec, mistake, kit), None, mistake.reading, text)
+
+
+def _places(spec: JobFile, mistake: Mistake, kit: Kit | None) -> str:
+    """Readings a mistake is about: ports for reflections, the standard by name for what sits between ports."""
+    if kit is None:
+        return ""
+    found: dict[str, None] = {}
+    for reading in spec.calibration.readings:
+        if reading.standard == ISOLATION or kit.kind(reading.standard) not in mistake.kinds:
+            continue
+        between = kit.kind(reading.standard) in ("thru", "line")
+        names = [f"{reading.standard} {'-'.join(map(str, reading.ports))}"] if between else []
+        found.update(dict.fromkeys(names or [f"port {p}" for p in sorted(reading.ports)]))
+    return ", ".join(found)

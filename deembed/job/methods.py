@@ -50,6 +50,7 @@ class Mistake:
     cause: str
     words: str
     reading: str
+    kinds: tuple[str, ...] = ()  # of the standards it is about
 
 
 # A reading with nothing connected between its ports; it is no standard of the kit.
@@ -63,21 +64,25 @@ _EXCHANGED = Mistake(
     "standards-exchanged",
     "two standards read in each other's place",
     "a known part that was not used for calibration, such as another offset short, at each port",
+    ("open", "short", "load", "table"),
 )
 _THRU = Mistake(
     "thru-length",
     "a thru longer or shorter than said",
     "a line of known length between the same ports, not used for calibration",
+    ("thru",),
 )
 _LINE = Mistake(
     "line-length",
     "lines exchanged or of another length than said",
     "a second line of another known length between the same ports",
+    ("line",),
 )
 _SIGN = Mistake(
     "reflect-sign",
     "a reflect of the other sign",
     "a short at each port, whose reflection is near -1 at low frequency",
+    ("reflect",),
 )
 _ELSEWHERE = Mistake(
     "calibration",

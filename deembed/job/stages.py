@@ -174,8 +174,14 @@ STAGES: tuple[Stage, ...] = (
         "blind spots",
         "looking for what could not have been seen",
         steps.blind_spots,
-        ("assembled", "shell", "part", "assessment", "terms on the grid"),
-        lambda spec: [spec.expect, spec.fixture.arms, spec.job.reference_impedance_ohm, _calibration(spec)],
+        ("assembled", "shell", "part", "assessment", "terms on the grid", "kit"),
+        lambda spec: [
+            spec.expect,
+            spec.fixture.arms,
+            spec.job.reference_impedance_ohm,
+            spec.calibration.method,
+            [[reading.standard, reading.ports] for reading in spec.calibration.readings],
+        ],
     ),
 )
 

@@ -164,9 +164,7 @@ def shell(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
     arms = {}
     for i, arm in enumerate(fixture.arms):
         where = f"arm {arm.part_port}"
-        arms[arm.part_port] = here(
-            arm.file, f"fixture.arms[{i}].file", f"the {where}".replace("the arm", "arm"), where
-        )
+        arms[arm.part_port] = here(arm.file, f"fixture.arms[{i}].file", where, where)
     sides = {arm.part_port: arm.analyzer_side for arm in fixture.arms}
     built, found = arms_shell(arms, analyzer_side=sides, ports=ports)
     return built, (*found, *notes)
@@ -217,4 +215,5 @@ def blind_spots(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[
         part=got["part"],
         findings=judged,
         terms=got["terms on the grid"],
+        kit=got["kit"],
     )
