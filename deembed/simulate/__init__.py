@@ -1,1 +1,1 @@
-"""simulate."""
+"""A simulated analyzer with faults on demand, for demonstration and tests."""
