@@ -117,8 +117,16 @@ def _arm(
     new = [key for key, size in after.items() if key not in before or size > _GROWN * before[key]]
     gone = [f for f in findings if f.severity == "contradiction" and (f.kind, f.where) not in after]
     if gone and not new:
+        # Gone by a margin: a contradiction at the edge of the tolerance comes and goes with anything.
+        _, strict = assess(other, expect=spec.expect.claims(), tolerance=_halved(tolerance_of(spec.expect)))
+        gone = [f for f in gone if (f.kind, f.where) not in _evidence(strict)]
+    if gone and not new:
         return None, _direction(port, gone)
     return (None, None) if new else (_reversed(spec, port, worst, at), None)
+
+
+def _halved(tolerance: float | dict[str, float]) -> float | dict[str, float]:
+    return {k: v / 2 for k, v in tolerance.items()} if isinstance(tolerance, dict) else tolerance / 2
 
 
 def _evidence(findings: Sequence[Finding]) -> dict[tuple[str, str], float]:

@@ -95,20 +95,21 @@ class Outcome:
             The folder cannot be written.
         """
         target = Path(directory)
+        real = target.resolve()  # a link may lead to another file system
         if target.exists() and not target.is_dir():
             raise FileError(
                 "this is a file, not a folder", where=str(target), do="Name another folder for the output."
             )
         try:
-            target.parent.mkdir(parents=True, exist_ok=True)
-            beside = Path(tempfile.mkdtemp(prefix=f".{target.name}-", dir=target.parent))
+            real.parent.mkdir(parents=True, exist_ok=True)
+            beside = Path(tempfile.mkdtemp(prefix=f".{real.name}-", dir=real.parent))
         except OSError as error:
             raise FileError(f"it cannot be written ({error.strerror})", where=str(target)) from error
         try:
             new = beside / "new"
             new.mkdir()
             self._make(new)
-            return _move_in(new, target, beside / "old")
+            return tuple(target / path.name for path in _move_in(new, real, beside / "old"))
         except OSError as error:
             raise FileError(f"it cannot be written ({error.strerror or error})", where=str(target)) from error
         finally:

@@ -11,8 +11,8 @@ import pytest
 from deembed.job import load_job
 from deembed.job.blind_spots import turn_arm
 from deembed.job.stripping import in_reference
-from deembed.labels import sparams
-from deembed.shell import arm_of, shell_from_arms
+from deembed.labels import relabel_ports, select_ports, sparams
+from deembed.shell import arm_of, embed, shell_from_arms
 
 Bench = Callable[..., Path]
 
@@ -48,6 +48,22 @@ def test_an_arm_whose_turning_would_be_seen_is_not_listed_and_turned_it_is_found
         f"{gain.text[0].lower()}{gain.text[1:]}"
     )
     assert "arm 2" in outcome.verdict
+
+
+@pytest.mark.parametrize(("gain", "accused"), [(0.9, ["arm 2"]), (1.007, [])])
+def test_a_contradiction_at_the_edge_of_the_tolerance_accuses_no_arm(
+    bench: Bench, make: dict, gain: float, accused: list[str]
+) -> None:
+    """With its arm the right way round, a part of gain 1.007 is inside the tolerance, but not inside half of it."""
+    path = bench(method="none")
+    f = make["grid"]()
+    inner = make["part"](f)
+    whole = embed(shell_from_arms({p: make["arm"](f, p) for p in (1, 2, 3)}), inner * (gain / 0.9))
+    for a, b in ((1, 2), (2, 3), (3, 1)):
+        make["save"](path.parent, f"raw/part_{a}{b}.s2p", relabel_ports(select_ports(whole, (a, b)), (1, 2)))
+    turned = load_job(path).changed({"fixture.arms[1].analyzer_side": 2}).run()
+    assert turned.contradicts
+    assert [x.where for x in turned.findings if x.kind == "arm-direction"] == accused
 
 
 def test_arms_that_are_the_same_from_both_ends_are_no_blind_spot(bench: Bench, make: dict) -> None:

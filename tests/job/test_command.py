@@ -119,6 +119,14 @@ def test_old_outputs_are_replaced_and_other_files_left_alone(bench: Bench, tmp_p
 
 
 @pytest.mark.usefixtures("plain_report")
+def test_a_link_to_a_folder_is_followed(bench: Bench, tmp_path: Path) -> None:
+    (tmp_path / "real").mkdir()
+    (tmp_path / "link").symlink_to(tmp_path / "real")
+    written = load_job(bench(method="none", points=5)).run().write(tmp_path / "link")
+    assert written[0] == tmp_path / "link" / "findings.json"
+    assert names(tmp_path / "real") == FILES and names(tmp_path) == ["bench", "link", "real"]
+
+
 @pytest.mark.parametrize("failing", FILES)
 def test_when_a_file_cannot_be_moved_in_the_old_ones_are_all_there(
     bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, failing: str
@@ -228,3 +236,40 @@ def test_stopping_by_hand_writes_nothing(
     assert main(["run", str(job), "--out", str(tmp_path / "out")]) == 2
     assert capsys.readouterr().err == "deembed: stopped; nothing was written\n"
     assert names(tmp_path) == ["bench"]
+
+
+def test_demo_writes_a_job_that_runs(tmp_path: Path, capsys: pytest.CaptureFixture) -> None:
+    assert main(["demo", str(tmp_path / "demo")]) == 0
+    said = capsys.readouterr().out
+    assert f"python -m deembed run {tmp_path / 'demo' / 'job.toml'} --out out/" in said
+    assert load_job(tmp_path / "demo" / "job.toml").spec.job.part_ports == 3
+
+
+def test_an_unknown_mistake_names_the_nearest(tmp_path: Path, capsys: pytest.CaptureFixture) -> None:
+    assert main(["demo", str(tmp_path / "demo"), "--mistake", "arm-revresed"]) == 2
+    said = capsys.readouterr()
+    assert said.out == "" and "arm-revresed" in said.err and "arm-reversed" in said.err
+    assert names(tmp_path) == []
+
+
+@pytest.mark.usefixtures("plain_report")
+def test_where_the_output_cannot_be_made(
+    bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture
+) -> None:
+    job = bench(method="none", points=5)
+    (tmp_path / "file").write_text("mine")
+    assert main(["run", str(job), "--out", str(tmp_path / "file" / "out")]) == 2
+    assert "it cannot be written (File exists)" in capsys.readouterr().err
+
+    def refuse(*_: object, **__: object) -> None:
+        raise PermissionError(13, "Permission denied", "a file")
+
+    monkeypatch.setattr("deembed.job.job.Job.run", refuse)
+    assert main(["run", str(job), "--out", str(tmp_path / "out")]) == 2
+    assert capsys.readouterr().err == "deembed: a file: Permission denied\n"
+
+
+def test_a_job_file_that_is_not_text(tmp_path: Path, capsys: pytest.CaptureFixture) -> None:
+    (tmp_path / "job.toml").write_bytes(b'[job]\ntitle = "\xff"\n')
+    assert main(["run", str(tmp_path / "job.toml"), "--out", str(tmp_path / "out")]) == 2
+    assert f"{tmp_path / 'job.toml'}: it cannot be read as text (" in capsys.readouterr().err
