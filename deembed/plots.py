@@ -18,7 +18,7 @@ from matplotlib.figure import Figure
 from deembed.plots_chart import draw_chart
 from deembed.plots_lanes import lanes_svg
 from deembed.plots_lanes_layout import segment_boxes
-from deembed.plots_lines import draw_lines
+from deembed.plots_lines import draw_lines, limit_words
 from deembed.plots_style import Theme, theme_of
 from deembed.views.lane_map import LaneMap
 from deembed.views.model import Picture
@@ -131,7 +131,8 @@ def figure(
 def _frame(picture: Picture, width: float, height: float) -> tuple[float, float, float, float]:
     """Room for the axes: fixed margins, so that pictures below one another line up, and the longest label."""
     left, top, bottom = 88.0, 54.0, 54.0
-    longest = max((len(t.name) for t in picture.traces), default=0)
+    names = [t.name for t in picture.traces] + [limit_words(m) for m in picture.limits]
+    longest = max(map(len, names), default=0)
     right = max(34 + 8.8 * longest, 96.0)
     if picture.kind == "reflection":
         left, right, top, bottom = 8.0, 8.0, 36.0, 34.0

@@ -175,9 +175,9 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
     ]
     foot = at.rows_end + 14
     out.append(_line(at.part_x, TOP - 10, at.part_x, foot, style.ink, 1.4, dash="10 3"))
-    out.append(_text(at.part_x + 2, TOP - 14, "part plane", style.ink, anchor="end"))
-    out.append(_text(at.part_x + 10, TOP - 14, "part port", style.ink))
-    out.append(_text(LEFT, TOP - 14, "analyzer", style.ink))
+    out.append(_text(at.part_x + 2, TOP - 24, "part plane", style.ink, anchor="end"))
+    out.append(_text(at.part_x + 10, TOP - 24, "part port", style.ink))
+    out.append(_text(LEFT, TOP - 24, "analyzer", style.ink))
     for n, lane in enumerate(lane_map.lanes):
         top, _, bottom = at.rows[lane.part_port]
         out.append(_wires(lane, at, style))
@@ -185,7 +185,7 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
             out.append(_text(8, top + k * ROW + ROW / 2 + 5, f"round {s.round_label}", style.ink))
         cable = at.boxes[lane.of("cable-plane")[0].id]
         if n == 0 and at.part_x - cable[0] > 130:
-            out.append(_text(cable[0] + 5, TOP - 14, "cable plane", style.ink, anchor="middle"))
+            out.append(_text(cable[0] + 5, TOP - 24, "cable plane", style.ink, anchor="middle"))
         for s in lane.segments:
             out.append(_segment(s, at.boxes[s.id], style, selected=s.id == selected, uid=uid))
         for k, line in enumerate(caption(lane, at.part_x + 60)):
@@ -193,11 +193,11 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
     out.append(_breaks(lane_map, at, style))
     part = lane_map.part
     out.append(_segment(part, at.boxes["part"], style, selected=selected == "part", uid=uid))
-    x, y, w, h = at.boxes["part"]
+    x, y, _, h = at.boxes["part"]
     if part.state not in ("plain", "absent"):
-        out.append(
-            _text(x + w, y + h + 18, f"{SHAPES[part.state]} {part.state_words}", style.ink, anchor="end")
-        )
+        shape = f"{SHAPES[part.state]} "
+        for k, one in enumerate(part.state_words.split(", ")):
+            out.append(_text(x, y + h + 18 + 18 * k, f"{'' if k else shape}{one}", style.ink))
     out.append(_axis(lane_map, at, style))
     size = f'viewBox="0 0 {at.width:g} {at.height:g}" width="{at.width:g}" height="{at.height:g}"'
     look = f'style="max-width:100%;height:auto" font-family="sans-serif" font-size="{TEXT}"'

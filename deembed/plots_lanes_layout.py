@@ -20,7 +20,7 @@ __all__ = [
     "segment_boxes",
 ]
 
-ROW, TALL, CAPTION, GAP, TOP = 34, 24, 22, 22, 34
+ROW, TALL, CAPTION, GAP, TOP = 34, 24, 22, 22, 44
 LEFT, TAB = 112, 78  # words of the lane, then the analyzer port's tab
 _BREAK_RATIO = 3.5  # error boxes longer than this many arms are cut short
 SHAPES = {"plain": "", "absent": "", **SEVERITY_SHAPES}

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 
 import numpy as np
 from matplotlib.artist import Artist
@@ -12,13 +13,15 @@ from numpy.typing import NDArray
 
 from deembed import words
 from deembed.plots_style import DASHES, MARKERS, Theme
-from deembed.views.model import Band, Picture, Trace
+from deembed.views.model import Band, Limit, Picture, Trace
 from deembed.views.thin import thin
 
-__all__ = ["draw_lines", "frequency_unit"]
+__all__ = ["draw_lines", "frequency_unit", "limit_words"]
 
 _UNITS = ((1e9, "GHz"), (1e6, "MHz"), (1e3, "kHz"), (1.0, "Hz"))
 _MARKS = 7  # markers along a curve
+_ROW_PT, _WORD_PT = 14.0, 6.8  # height of a row of band words, width of a letter
+_LIMIT_DASH = (0, (12, 4))
 
 
 def frequency_unit(highest: float) -> tuple[float, str]:
@@ -42,16 +45,20 @@ def draw_lines(
         inside = (x >= low) & (x <= high)
         shown.append(y[inside])
     ax.set_xlim(low / scale, high / scale)
-    bottom, top = _y_range(picture, shown)
+    across, height = _points(ax)
+    placed = _placed(picture.bands, low, high, across)
+    rows = max((p.row + 1 for p in placed if p.row is not None), default=0)
+    bottom, top = _y_range(picture, shown, words=min(rows * _ROW_PT / height, 0.4))
     ax.set_ylim(bottom, top)
     ax.set_xlabel(f"{picture.x_label} ({unit})", color=style.ink, fontsize=style.text_pt)
     ax.set_ylabel(picture.y_label, color=style.ink, fontsize=style.text_pt)
+    ax.ticklabel_format(useOffset=False)
     ax.grid(True, color=style.faint, linewidth=0.6, alpha=0.6)
     ax.set_axisbelow(True)
     if picture.unit == "degrees" and top - bottom > 180:
         ax.yaxis.set_major_locator(MultipleLocator(90))
-    more = _limits(ax, picture, style) + _bands(ax, picture.bands, style, low, high, scale)
-    more += _labels(ax, picture.traces, curves, style)
+    more = _limits(ax, picture, style) + _bands(ax, placed, style, scale)
+    more += _labels(ax, picture, curves, style)
     if cursor is not None:
         more += _cursor(ax, picture, cursor, scale, style)
     return [*curves, *more]
@@ -92,7 +99,8 @@ def _curve(ax: Axes, t: Trace, number: int, x: NDArray, y: NDArray, style: Theme
     return line
 
 
-def _y_range(picture: Picture, shown: Sequence[NDArray]) -> tuple[float, float]:
+def _y_range(picture: Picture, shown: Sequence[NDArray], *, words: float) -> tuple[float, float]:
+    """Values in view and limits, with room, and on top a share of the height for band words."""
     values = np.concatenate([np.empty(0), *shown])
     values = values[np.isfinite(values)]
     values = np.concatenate([values, [m.value for m in picture.limits]])
@@ -101,36 +109,37 @@ def _y_range(picture: Picture, shown: Sequence[NDArray]) -> tuple[float, float]:
     bottom, top = float(values.min()), float(values.max())
     if picture.y_floor is not None:
         bottom = min(bottom, picture.y_floor)
-    least = {"dB": 0.5, "degrees": 5.0, "ps": 5.0}.get(picture.unit, 1e-9)  # rounding noise is no curve
+    least = {"dB": 0.5, "degrees": 5.0, "ps": 5.0}.get(picture.unit, 1e-3)  # rounding noise is no curve
     if top - bottom < least:
-        middle = (top + bottom) / 2
-        bottom, top = middle - least / 2, middle + least / 2
+        bottom = (bottom + top - least) / 2 if picture.y_floor is None else bottom
+        top = bottom + least
     room = 0.06 * (top - bottom)
-    return (bottom if bottom == picture.y_floor else bottom - room), top + room * (
-        1 + 1.4 * bool(picture.bands)
-    )
+    bottom = bottom if bottom == picture.y_floor else bottom - room
+    return bottom, top + room + (top + room - bottom) * words / (1 - words)
 
 
 def _limits(ax: Axes, picture: Picture, style: Theme) -> list[Artist]:
-    out: list[Artist] = []
-    for limit in picture.limits:
-        out.append(ax.axhline(limit.value, color=style.ink, linewidth=1.4, linestyle=(0, (12, 4))))
-        out.append(
-            ax.annotate(
-                f"{limit.words} {limit.value:g}", (0.0, limit.value), xycoords=("axes fraction", "data"),
-                xytext=(6, 4), textcoords="offset points", color=style.ink, fontsize=style.text_pt,
-                bbox=_backing(style),
-            )
-        )  # fmt: skip
-    return out
+    return [
+        ax.axhline(m.value, color=style.ink, linewidth=1.4, linestyle=_LIMIT_DASH) for m in picture.limits
+    ]
 
 
-def _bands(
-    ax: Axes, bands: Sequence[Band], style: Theme, low: float, high: float, scale: float
-) -> list[Artist]:
-    """Shade the bands that reach into view; the words of overlapping ones stand below one another."""
-    out: list[Artist] = []
+@dataclass(frozen=True)
+class _Place:
+    """A band in view [Hz], where its word starts, and in which row; None where the word already stands."""
+
+    band: Band
+    left: float
+    right: float
+    start: float
+    row: int | None
+
+
+def _placed(bands: Sequence[Band], low: float, high: float, across: float) -> list[_Place]:
+    """Bands that reach into view, at least wide enough to be seen; words that would meet are put in rows."""
+    out: list[_Place] = []
     rows: list[float] = []
+    ends: dict[str, float] = {}
     least = 0.004 * (high - low)
     for b in sorted(bands, key=lambda b: (b.from_hz, -b.to_hz)):
         if b.to_hz < low or b.from_hz > high:
@@ -139,56 +148,88 @@ def _bands(
         if right - left < least:
             middle = (left + right) / 2
             left, right = middle - least / 2, middle + least / 2
-        strong = b.severity == "contradiction"
-        out.append(
-            ax.axvspan(
-                left / scale, right / scale, color=style.shade_strong if strong else style.shade, zorder=0.3
-            )
-        )
-        row = next((i for i, end in enumerate(rows) if end <= left), len(rows))
-        rows[row:row + 1] = [max(right, left + 0.022 * len(b.word) * (high - low))]  # fmt: skip
-        if row < 4:
-            near_end = (left - low) / (high - low) > 0.75
-            out.append(
-                ax.annotate(
-                    b.word, ((right if near_end else left) / scale, 1.0), xycoords=("data", "axes fraction"),
-                    xytext=(-4 if near_end else 4, -4 - 13 * row), textcoords="offset points", va="top",
-                    ha="right" if near_end else "left", color=style.ink, fontsize=style.text_pt,
-                    style="italic",
-                )
-            )  # fmt: skip
+        wide = _WORD_PT * len(b.word) / across * (high - low)
+        start, before = min(left, high - wide), ends.get(b.word, -np.inf)
+        if start < before and before + wide <= right:
+            start = before  # the same word ends inside this band: go on behind it
+        if start < before:
+            out.append(_Place(b, left, right, start, None))
+            continue
+        row = next((i for i, end in enumerate(rows) if end <= start), len(rows))
+        ends[b.word] = start + wide
+        rows[row : row + 1] = [start + wide]
+        out.append(_Place(b, left, right, start, row))
     return out
 
 
-def _labels(ax: Axes, traces: Sequence[Trace], curves: Sequence[Artist], style: Theme) -> list[Artist]:
-    """Names at the right ends of the curves, spread so that none covers another, each tied to its end."""
+def _bands(ax: Axes, placed: Sequence[_Place], style: Theme, scale: float) -> list[Artist]:
+    """Shade the bands and write their words in the room kept for them at the top."""
+    out: list[Artist] = []
+    for p in placed:
+        shade = style.shade_strong if p.band.severity == "contradiction" else style.shade
+        out.append(ax.axvspan(p.left / scale, p.right / scale, color=shade, zorder=0.3))
+        if p.row is None:
+            continue
+        out.append(
+            ax.annotate(
+                p.band.word, (p.start / scale, 1.0), xycoords=("data", "axes fraction"),
+                xytext=(3, -3 - _ROW_PT * p.row), textcoords="offset points", va="top", ha="left",
+                color=style.ink, fontsize=style.text_pt, style="italic",
+            )
+        )  # fmt: skip
+    return out
+
+
+@dataclass(frozen=True)
+class _Name:
+    """Words at the end of a line, in its colour and dash."""
+
+    words: str
+    colour: str
+    dash: object
+
+
+def _name(t: Trace, style: Theme) -> _Name:
+    return _Name(t.name, style.hue(t.hue), DASHES[t.dash % len(DASHES)])
+
+
+def limit_words(limit: Limit) -> str:
+    """What stands at the end of a limit's line, e.g. ``passive limit 1``."""
+    return f"{limit.words} {limit.value:g}"
+
+
+def _labels(ax: Axes, picture: Picture, curves: Sequence[Artist], style: Theme) -> list[Artist]:
+    """Names at the right ends of curves and limits, spread so that none covers another, each tied to its end."""
     low, high = ax.get_ylim()
     across, height = _points(ax)
     unit = (high - low) / height
     left, right = ax.get_xlim()
     ends = []
-    for t, line in zip(traces, curves, strict=True):
+    for m in picture.limits:
+        if low <= m.value <= high:
+            ends.append((m.value, right, _Name(limit_words(m), style.ink, _LIMIT_DASH)))
+    for t, line in zip(picture.traces, curves, strict=True):
         x, y = (np.asarray(v) for v in line.get_data())  # type: ignore[attr-defined]
         good = np.isfinite(y)
         x, y = x[good], y[good]
         if x.size and x[0] <= right:
             end = min(float(x[-1]), right)
-            ends.append((float(np.clip(np.interp(end, x, y), low, high)), end, t))
+            ends.append((float(np.clip(np.interp(end, x, y), low, high)), end, _name(t, style)))
     ends = sorted(reversed(ends), key=lambda e: round((e[0] - low) / unit))  # first of equals on top
     gap = (style.text_pt + 3) * unit
     spots = _spread([e[0] for e in ends], gap, low, high)
     out: list[Artist] = []
-    for (value, end, t), spot in zip(ends, spots, strict=True):
+    for (value, end, n), spot in zip(ends, spots, strict=True):
         far = end < right - 0.02 * (right - left)  # a line this long would pass for a curve
         out.append(
             ax.annotate(
-                t.name, (end, value), xytext=(1 + 17 / across, (spot - low) / (high - low)),
+                n.words, (end, value), xytext=(1 + 17 / across, (spot - low) / (high - low)),
                 textcoords="axes fraction", va="center", ha="left", color=style.ink, fontsize=style.text_pt,
                 annotation_clip=False,
                 arrowprops={
-                    "arrowstyle": "-", "color": style.faint if far else style.hue(t.hue),
+                    "arrowstyle": "-", "color": style.faint if far else n.colour,
                     "linewidth": 1.0 if far else 1.7,
-                    "linestyle": "dotted" if far else DASHES[t.dash % len(DASHES)],
+                    "linestyle": "dotted" if far else n.dash,
                     "shrinkA": 0, "shrinkB": 0, "relpos": (0, 0.5),
                 },
             )
@@ -233,8 +274,3 @@ def _cursor(ax: Axes, picture: Picture, cursor: float, scale: float, style: Them
         )
     )  # fmt: skip
     return out
-
-
-def _backing(style: Theme) -> dict:
-    """A sheet behind words that may lie over a curve."""
-    return {"boxstyle": "square,pad=0.1", "facecolor": style.paper, "edgecolor": "none", "alpha": 0.85}

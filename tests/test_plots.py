@@ -14,7 +14,7 @@ from deembed.errors import DeembedError
 from deembed.plots import draw, figure, lane_map_svg, svg
 from deembed.plots_chart import chart_grid
 from deembed.plots_lanes_layout import layout_of, segment_boxes
-from deembed.plots_lines import _spread, frequency_unit
+from deembed.plots_lines import _placed, _spread, frequency_unit
 from deembed.plots_style import LANE_THEMES, THEMES
 from deembed.views import Picture, Trace, lane_map, pictures
 from deembed.views.model import Band
@@ -95,6 +95,19 @@ def test_bands_are_shaded_and_named(inventory):
     assert {f"word {k}" for k in range(4)} <= set(texts(svg(many)))
     point = p.with_bands([Band(5.9e9, 5.9e9, "late", "contradiction")])
     assert "late" in texts(svg(point))
+
+
+def test_words_of_bands_stand_apart_and_are_not_repeated_in_one_place():
+    bands = [Band(1e9, 2e9, "gain", "warning"), Band(1.1e9, 1.4e9, "gain", "warning")]
+    apart = [Band(1e9, 1.2e9, "gain above 1", "warning"), Band(1.25e9, 4e9, "gain above 1", "warning")]
+    first = _placed(bands, 1e9, 5e9, 100.0)
+    assert [p.row for p in first] == [0, None]
+    second = _placed(apart, 1e9, 5e9, 300.0)
+    assert [p.row for p in second] == [0, 0]
+    assert second[1].start > second[1].left
+    late = _placed([Band(4.99e9, 5e9, "gain above 1", "warning")], 1e9, 5e9, 300.0)[0]
+    assert late.start < late.left
+    assert _placed([Band(6e9, 7e9, "x", "warning")], 1e9, 5e9, 300.0) == []
 
 
 def test_zooming_shows_only_the_band_and_fits_the_values_in_it(inventory):

@@ -147,7 +147,7 @@ def power_balance(metrics: xr.Dataset, *, bands: Sequence[Band] = (), name: str 
         "Power out / power in",
         traces,
         "of the power",
-        limits=(Limit(1.0, "all of it"),),
+        limits=(Limit(1.0, "passive limit"),),
         bands=tuple(bands),
         alt=f"Share of the driven power that comes out again: {told}.",
         y_floor=0.0,

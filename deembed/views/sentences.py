@@ -174,7 +174,9 @@ def unwitnessed(outcome: Any) -> tuple[str, ...]:
     """
     facts = facts_of(outcome.job)
     out = []
-    if outcome.terms is None:
+    if any(b.cause == "calibration" for b in outcome.blind_spots):
+        pass  # said there, and better
+    elif outcome.terms is None:
         out.append("The readings came already corrected: nothing here can show a fault of that correction.")
     elif redundancy_words(outcome.terms):
         out.append(f"The error terms have no relation to spare ({redundancy_words(outcome.terms)}).")

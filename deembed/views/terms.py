@@ -142,6 +142,6 @@ def line_phase(terms: xr.Dataset) -> Picture:
         "Phase (degrees)",
         (trace,),
         "degrees",
-        limits=(Limit(20.0, "least"), Limit(160.0, "most")),
+        limits=(Limit(20.0, "trusted from"), Limit(160.0, "trusted to")),
         alt=f"Phase of the line beyond the thru: {told}; 20 to 160 degrees is trusted (common practice).",
     )
