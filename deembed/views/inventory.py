@@ -130,7 +130,7 @@ def _terms(outcome: Any) -> dict[str, Callable[[], Picture]]:
     if "redundancy" in found:
         bands = _of_kind(tuple(outcome.findings), "redundan")
         makers["terms.redundancy"] = partial(terms.redundancy, found, bands=bands)
-    if "line_phase_deg" in found:
+    if "line_phase" in found:
         makers["terms.line-phase"] = partial(terms.line_phase, found)
     return makers
 

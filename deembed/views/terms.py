@@ -121,7 +121,7 @@ def line_phase(terms: xr.Dataset) -> Picture:
     Parameters
     ----------
     terms : Dataset
-        With ``line_phase_deg`` over frequency.
+        With ``line_phase`` over frequency.
 
     Returns
     -------
@@ -133,7 +133,7 @@ def line_phase(terms: xr.Dataset) -> Picture:
     20 to 160 degrees is common practice.
     """
     f = np.asarray(terms.frequency.values, dtype=float)
-    value = np.asarray(terms["line_phase_deg"].values, dtype=float)
+    value = np.abs(np.asarray(terms["line_phase"].values, dtype=float))
     trace = Trace("line minus thru", f, value)
     told = "no values" if trace.empty else f"{np.nanmin(value):.0f} to {np.nanmax(value):.0f} degrees"
     return Picture(

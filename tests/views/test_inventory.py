@@ -93,5 +93,5 @@ def test_a_one_port_part_has_no_pictures_of_pairs(outcome, fake):
 
 
 def test_line_phase_is_listed_where_the_terms_hold_it(outcome):
-    phased = outcome.terms.assign(line_phase_deg=("frequency", np.linspace(20, 160, 401)))
+    phased = outcome.terms.assign(line_phase=("frequency", np.linspace(20, 160, 401)))
     assert "20 to 160 degrees" in pictures(outcome.changed(terms=phased))["terms.line-phase"].alt

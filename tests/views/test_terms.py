@@ -55,7 +55,7 @@ def test_absent_redundancy_gives_the_reason(outcome):
 
 
 def test_line_phase_shows_the_trusted_band(outcome):
-    phased = outcome.terms.assign(line_phase_deg=("frequency", np.linspace(5, 200, 401)))
+    phased = outcome.terms.assign(line_phase=("frequency", -np.linspace(5, 200, 401)))
     p = view.line_phase(phased)
     assert [m.value for m in p.limits] == [20.0, 160.0]
     assert p.traces[0].y[-1] == 200
