@@ -64,6 +64,8 @@ class Circuit:
     def line(self, a: int, b: int, *, ohm: float, gamma: NDArray, length: float) -> Circuit:
         """A transmission line over ground: impedance [ohm], propagation constant [1/m], length [m]."""
         gl = gamma * length
+        if np.abs(np.sinh(gl)).min() < 1e-9:
+            raise ValueError("a lossless line of whole half wavelengths has no admittance: give it some loss")
         own, across = 1 / (ohm * np.tanh(gl)), -1 / (ohm * np.sinh(gl))
         self.y[:, a, a] += own
         self.y[:, b, b] += own
