@@ -166,10 +166,10 @@ def _reversed(spec: JobFile, port: int, worst: float, at: float) -> BlindSpot:
     if second is None:
         reading = f"an open and a short at the part's plane of port {port}, read through arm {port}"
     else:
-        reading = f"a line of known length joining arms {port} and {second} in the part's place"
+        reading = f"a line of known length joining arms {min(port, second)} and {max(port, second)} in the part's place"
     text = (
         f"Were arm {port} the wrong way round, nothing in this job would show it, and the part would be off "
-        f"by up to {words.decibel(worst)} (worst at {words.frequency(at)})."
+        f"by a wave amplitude of up to {words.decibel(worst)} (worst at {words.frequency(at)})."
     )
     return BlindSpot("arm-reversed", f"arm {port}", float(20 * np.log10(worst)), reading, text)
 

@@ -159,3 +159,36 @@ def test_what_is_no_archive_is_refused(tmp_path: Path) -> None:
     message = f"{wrong}: format version 9 is newer than this program reads (1). Update deembed."
     with pytest.raises(FileError, match=re.escape(message)):
         load_job(wrong)
+
+
+def test_attributes_that_are_numpy_numbers_are_kept_and_others_refused(bench: Bench, tmp_path: Path) -> None:
+    from dataclasses import replace
+
+    outcome = load_job(bench(method="none", arms=False, points=3)).run()
+    marked = replace(
+        outcome,
+        part=outcome.part.assign_attrs(level=np.float64(0.5), ports=np.array([1, 2])),
+        disagreement=None,
+    )
+    write_archive(marked, tmp_path / "outcome.nc")
+    back = open_outcome(tmp_path / "outcome.nc")
+    assert back.part.attrs == {"level": 0.5, "ports": [1, 2]} and back.disagreement is None
+    with pytest.raises(TypeError, match="cannot be kept in an archive"):
+        write_archive(replace(outcome, part=outcome.part.assign_attrs(x=object())), tmp_path / "other.nc")
+
+
+def test_the_words_of_the_job_are_kept_in_every_output(bench: Bench, tmp_path: Path) -> None:
+    said = {
+        "operator": "R. Weir",
+        "instrument": "bench two",
+        "kit_due": "2027-03-01",
+        "temperature_c": "23.1",
+    }
+    job = load_job(bench(method="none", arms=False, points=3)).changed(job=said)
+    job.run().write(tmp_path / "out")
+    comments = (tmp_path / "out/part.s3p").read_text()
+    page = (tmp_path / "out/report.html").read_text()
+    with xr.open_dataset(tmp_path / "out/outcome.nc") as root:
+        text = root.attrs["job_toml"]
+    for word in said.values():
+        assert word in comments and word in page and word in text

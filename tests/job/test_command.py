@@ -76,7 +76,7 @@ def test_a_contradiction_gives_exit_code_1_and_the_files(
 def test_what_cannot_be_run_gives_exit_code_2_one_message_and_nothing_else(
     bench: Bench, tmp_path: Path, capsys: pytest.CaptureFixture
 ) -> None:
-    job = bench(method="none", points=5)
+    job = bench(method="none", arms=False, points=5)
     (job.parent / "raw/part_23.s2p").unlink()
     assert main(["run", str(job), "--out", str(tmp_path / "out")]) == 2
     said = capsys.readouterr()
@@ -108,7 +108,7 @@ def test_the_module_runs_in_a_process_of_its_own(bench: Bench, tmp_path: Path) -
 
 @pytest.mark.usefixtures("plain_report")
 def test_old_outputs_are_replaced_and_other_files_left_alone(bench: Bench, tmp_path: Path) -> None:
-    job = load_job(bench(method="none", points=5))
+    job = load_job(bench(method="none", arms=False, points=5))
     out = tmp_path / "out"
     job.run().write(out)
     (out / "notes.txt").write_text("mine")
@@ -122,7 +122,7 @@ def test_old_outputs_are_replaced_and_other_files_left_alone(bench: Bench, tmp_p
 def test_a_link_to_a_folder_is_followed(bench: Bench, tmp_path: Path) -> None:
     (tmp_path / "real").mkdir()
     (tmp_path / "link").symlink_to(tmp_path / "real")
-    written = load_job(bench(method="none", points=5)).run().write(tmp_path / "link")
+    written = load_job(bench(method="none", arms=False, points=5)).run().write(tmp_path / "link")
     assert written[0] == tmp_path / "link" / "findings.json"
     assert names(tmp_path / "real") == FILES and names(tmp_path) == ["bench", "link", "real"]
 
@@ -131,7 +131,7 @@ def test_a_link_to_a_folder_is_followed(bench: Bench, tmp_path: Path) -> None:
 def test_when_a_file_cannot_be_moved_in_the_old_ones_are_all_there(
     bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, failing: str
 ) -> None:
-    job = load_job(bench(method="none", points=5))
+    job = load_job(bench(method="none", arms=False, points=5))
     out = tmp_path / "out"
     job.run().write(out)
     before = {p.name: p.read_bytes() for p in out.iterdir()}
@@ -159,7 +159,7 @@ def test_when_a_file_cannot_be_made_nothing_is_written(
         raise OSError(28, "No space left on device")
 
     monkeypatch.setattr(deembed.job.archive, "write_archive", full)
-    job = bench(method="none", points=5)
+    job = bench(method="none", arms=False, points=5)
     assert main(["run", str(job), "--out", str(tmp_path / "out")]) == 2
     assert (
         capsys.readouterr().err
@@ -188,7 +188,7 @@ def test_a_job_that_is_not_there(
 
 @pytest.mark.usefixtures("plain_report")
 def test_an_output_that_is_a_file(bench: Bench, tmp_path: Path, capsys: pytest.CaptureFixture) -> None:
-    job = bench(method="none", points=5)
+    job = bench(method="none", arms=False, points=5)
     (tmp_path / "out").write_text("mine")
     assert main(["run", str(job), "--out", str(tmp_path / "out")]) == 2
     message = f"deembed: {tmp_path}/out: this is a file, not a folder. Name another folder for the output.\n"
@@ -213,7 +213,7 @@ def test_help_explains_itself(capsys: pytest.CaptureFixture) -> None:
 def test_a_bar_on_a_terminal_once_the_work_is_long(
     bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture
 ) -> None:
-    job = bench(method="none", points=5)
+    job = bench(method="none", arms=False, points=5)
     monkeypatch.setattr(command, "_PATIENCE", 0.0)
     main(["run", str(job), "--out", str(tmp_path / "out")])
     assert capsys.readouterr().err == ""  # not a terminal
@@ -232,7 +232,7 @@ def test_stopping_by_hand_writes_nothing(
         raise KeyboardInterrupt
 
     monkeypatch.setattr(steps, "in_reference", stop)
-    job = bench(method="none", points=5)
+    job = bench(method="none", arms=False, points=5)
     assert main(["run", str(job), "--out", str(tmp_path / "out")]) == 2
     assert capsys.readouterr().err == "deembed: stopped; nothing was written\n"
     assert names(tmp_path) == ["bench"]
@@ -256,7 +256,7 @@ def test_an_unknown_mistake_names_the_nearest(tmp_path: Path, capsys: pytest.Cap
 def test_where_the_output_cannot_be_made(
     bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture
 ) -> None:
-    job = bench(method="none", points=5)
+    job = bench(method="none", arms=False, points=5)
     (tmp_path / "file").write_text("mine")
     assert main(["run", str(job), "--out", str(tmp_path / "file" / "out")]) == 2
     assert "it cannot be written (File exists)" in capsys.readouterr().err

@@ -70,3 +70,16 @@ def test_findings_are_said_once_and_their_ids_are_their_own() -> None:
         ("a-part-1", "one"),
         ("a-part-2", "two"),
     ]
+
+
+def test_a_file_that_cannot_be_read_is_named(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    (tmp_path / "a.s1p").write_text("# Hz S RI R 50\n1e9 0.5 0\n")
+
+    def refuse(_: Path) -> bytes:
+        raise PermissionError(13, "Permission denied")
+
+    monkeypatch.setattr(Path, "read_bytes", refuse)
+    with pytest.raises(
+        ValueError, match=r"^rounds\[0\]\.file: 'a\.s1p' cannot be read \(Permission denied\)$"
+    ):
+        Inputs(tmp_path).get("a.s1p", key="rounds[0].file")
