@@ -17,10 +17,21 @@ _NOT_AS = {
     "lossless": "lossless",
     "three-way": "reciprocal",
 }
+# Causes before symptoms: a calibration at odds with itself explains what rounds and part then show.
+_LOOK_FIRST = ("tracking-sign", "arm-direction", "redundancy", "line-phase", "terms-size", "disagreement")
+_MOST_PLACES = 2
 # Said when the job's blind spots were not worked out: true of any job.
 _ALWAYS_UNSEEN = (
     "a mistake that leaves a passive part behind, such as a wrong length, looks just like a good part"
 )
+_UNSEEN = {
+    "arm-reversed": "{where} being the wrong way round",
+    "standards-exchanged": "open and short exchanged at {where}",
+    "thru-length": "a wrong length of {where}",
+    "line-length": "a wrong length of {where}",
+    "reflect-sign": "a wrong sign of {where}",
+    "calibration": "a mistake in the calibration behind these readings",
+}
 
 
 def verdict(
@@ -43,8 +54,8 @@ def verdict(
     Returns
     -------
     str
-        Contradictions first; then each place with a warning; without a contradiction also what these
-        readings could not have shown.
+        Contradictions first, with band and worst size; then where to look first; without a contradiction also
+        what these readings could not have shown.
 
     Examples
     --------
@@ -56,11 +67,10 @@ have shown: a mistake that leaves a passive part behind, such as a wrong length,
     against = [f for f in findings if f.severity == "contradiction"]
     warnings = [f for f in findings if f.severity == "warning"]
     if against:
-        sentence = _not_believable(against)
-        doubts = f"; also look at {_places(warnings)}" if warnings else ""
-        return f"{sentence}{doubts}."
-    unseen = _unseen(blind_spots)
+        doubts = f"; look first at {_places(warnings)}" if warnings else ""
+        return f"{_not_believable(against)}{doubts}."
     doubts = f"; but look at {_places(warnings)}" if warnings else ""
+    unseen = _unseen(blind_spots)
     true = [name for name, value in (expect or {}).items() if value]
     if any(f.kind == "not-judged" for f in warnings):
         return f"Not judged, since no frequency of the part could be computed{doubts}."
@@ -71,39 +81,36 @@ have shown: a mistake that leaves a passive part behind, such as a wrong length,
 
 
 def _not_believable(against: Sequence[Finding]) -> str:
-    """Each property once, with all its bands; the reason from the worst finding of the first property."""
+    """Properties and the band they all span; the reason of the worst finding of the first property."""
     by_name: dict[str, list[Finding]] = {}
     for finding in against:
         by_name.setdefault(_NOT_AS.get(finding.kind, ""), []).append(finding)
-    clauses = []
-    for name, group in by_name.items():
-        main = [f for f in group if f.kind == group[0].kind]
-        worst = max(main, key=lambda f: f.worst or 0.0)
-        if not name:
-            clauses += [_lower(f.text.rstrip(".")) for f in group]
-            continue
-        where = "; ".join(dict.fromkeys(f.where for f in main if f.where))
-        place = f" ({where})" if where else ""
-        clauses.append(f"as a {name} part {_bands(main)}{place}: {_reason(worst)}")
-    known = [c for c in clauses if c.startswith("as a")]
-    other = [c for c in clauses if not c.startswith("as a")]
-    if not known:
+    other = [_lower(f.text.rstrip(".")) for f in by_name.pop("", [])]
+    if not by_name:
         return f"Not believable: {'; '.join(other)}"
-    rest = [f"nor {c}" for c in known[1:]] + other
-    return "; ".join([f"Not believable {known[0]}", *rest])
+    # Gain first: it is the plainest impossibility, whatever else is wrong as well.
+    names = sorted(by_name, key=("passive", "reciprocal", "lossless").index)
+    first = by_name[names[0]]
+    main = [f for f in first if f.kind == first[0].kind]
+    worst = max(main, key=lambda f: f.worst or 0.0)
+    ports = ", ".join(dict.fromkeys(f.where for f in main if f.where))
+    place = f" ({ports})" if ports and len(main) == 1 else ""
+    span = _span([f for name in names for f in by_name[name]])
+    head = f"Not believable as a {words.listed(names, last='or')} part {span}{place}: {_reason(worst)}"
+    return "; ".join([head, *other])
 
 
 def _lower(text: str) -> str:
     return text[:1].lower() + text[1:]
 
 
-def _bands(group: Sequence[Finding]) -> str:
-    named = sorted({(f.from_hz, f.to_hz) for f in group if f.from_hz is not None and f.to_hz is not None})
-    if not named:
+def _span(group: Sequence[Finding]) -> str:
+    """The band from the lowest to the highest frequency of the group; how many bands, where they are many."""
+    bands = {(f.from_hz, f.to_hz) for f in group if f.from_hz is not None and f.to_hz is not None}
+    if not bands:
         return "at some frequencies"
-    if len(named) > 3:
-        return f"in {len(named)} bands {_lower(at_band(named[0][0], max(to for _, to in named)))}"
-    return words.listed(_lower(at_band(*band)) for band in named)
+    whole = _lower(at_band(min(low for low, _ in bands), max(high for _, high in bands)))
+    return whole if len(bands) == 1 else f"in {len(bands)} bands {whole}"
 
 
 def _reason(finding: Finding) -> str:
@@ -116,28 +123,27 @@ def _reason(finding: Finding) -> str:
 
 
 def _places(warnings: Sequence[Finding]) -> str:
-    """Kinds and places of the warnings, each place once with all it spans."""
-    spans: dict[str, dict[str, list[float]]] = {}
-    for finding in warnings:
-        ends = spans.setdefault(finding.kind, {}).setdefault(finding.where or "the part", [])
-        ends += [hz for hz in (finding.from_hz, finding.to_hz) if hz is not None]
-    said = []
-    for kind, by_place in spans.items():
-        places = [f"{p} ({words.band(min(ends), max(ends))})" if ends else p for p, ends in by_place.items()]
-        said.append(f"{_plain(kind)} at {_few(places)}")
-    return "; ".join(said)
+    """Where to look first: causes before symptoms, each place once, few enough to act on."""
+    ranked = sorted(warnings, key=lambda f: _LOOK_FIRST.index(f.kind) if f.kind in _LOOK_FIRST else 3)
+    said = list(dict.fromkeys(f"{f.where or 'the part'} ({_plain(f.kind)})" for f in ranked))
+    if len(said) <= _MOST_PLACES:
+        return words.listed(said)
+    return f"{', then '.join(said[:_MOST_PLACES])}, and {len(said) - _MOST_PLACES} more below"
 
 
 def _plain(kind: str) -> str:
     return {"missing": "missing numbers", "not-judged": "missing numbers"}.get(kind, kind.replace("-", " "))
 
 
-def _few(places: Sequence[str], most: int = 3) -> str:
-    if len(places) <= most:
-        return words.listed(places)
-    return f"{', '.join(places[:most])} and {len(places) - most} more"
-
-
 def _unseen(blind_spots: Sequence[BlindSpot]) -> str:
-    causes = [f"{b.cause} at {b.where}" if b.where else b.cause for b in blind_spots]
-    return f"what they could not have shown: {_few(causes) if causes else _ALWAYS_UNSEEN}"
+    """Mistakes that would leave no trace, one phrase per kind of mistake."""
+    by_cause: dict[str, list[str]] = {}
+    for spot in blind_spots:
+        by_cause.setdefault(spot.cause, []).append(spot.where)
+    phrases = [
+        _UNSEEN.get(cause, f"{cause.replace('-', ' ')} at {{where}}").format(
+            where=words.listed(places, last="or")
+        )
+        for cause, places in by_cause.items()
+    ]
+    return f"what they could not have shown: {'; '.join(phrases) if phrases else _ALWAYS_UNSEEN}"

@@ -58,7 +58,7 @@ def test_a_reversed_arm_is_seen_or_said_to_be_unseeable(outcomes):
     job, outcome = outcomes["arm-reversed"]
     named = [f for f in outcome.findings if "arm 2" in f.where.split(", ") and f.severity != "note"]
     spots = [b for b in outcome.blind_spots if b.cause == "arm-reversed" and b.where == "arm 2"]
-    assert named or (spots and "arm-reversed at arm 2" in outcome.verdict)
+    assert named or (spots and "arm 1, arm 2 or arm 3 being the wrong way round" in outcome.verdict)
     truth = deembed.read_touchstone(job.parent / "truth/part.s3p")
     if spots:  # the size it gives for the unseen error is the error there really is
         error = 20 * np.log10(np.abs(outcome.part.values - truth.values).max())
