@@ -141,5 +141,5 @@ def test_nothing_expected_or_nothing_computed_is_not_called_physical():
     )
     sentence = of_part(lambda s: s.fill(np.nan))
     assert sentence.startswith(
-        "Not judged, since no frequency of the part could be computed; but look at missing"
+        "Not judged, since no frequency of the part could be computed; but look at the part (missing numbers)"
     )

@@ -39,7 +39,7 @@ def test_the_clean_one_recovers_the_truth_within_its_imperfections(outcomes):
 
 def test_exchanged_standards_are_named_with_their_port(outcomes):
     _, outcome = outcomes["standards-exchanged"]
-    assert outcome.verdict.startswith("Not believable as a passive part")
+    assert outcome.verdict.startswith("Not believable as a passive or reciprocal part")
     assert "open 2, short 2" in outcome.verdict
     signs = [f for f in outcome.findings if f.kind == "tracking-sign"]
     assert [f.where for f in signs] == ["open 2, short 2"]
