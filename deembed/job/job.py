@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 import xarray as xr
 
-from deembed.errors import FileError
+from deembed.errors import DeembedError, FileError
 from deembed.findings import Finding, finding_id, sort_findings
 from deembed.job.edit import edited_text
 from deembed.job.inputs import Inputs
@@ -118,13 +118,12 @@ class Job:
         from deembed.job.outcome import Outcome
         from deembed.physicality.verdict import verdict
 
-        done = walk(
-            self.spec,
-            self.inputs,
-            Place(self.text, self.name),
-            cache=Cache() if cache is None else cache,
-            progress=progress,
-        )
+        place = Place(self.text, self.name)
+        kept = Cache() if cache is None else cache
+        try:
+            done = walk(self.spec, self.inputs, place, cache=kept, progress=progress)
+        except DeembedError as error:
+            raise place.located(error) from error
         findings = sort_findings(_each_once(f for step in done.values() for f in step.findings))
         spots = done["blind spots"].value
         claims = self.spec.expect.claims()

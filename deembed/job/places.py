@@ -6,7 +6,7 @@ import re
 import tomllib
 from collections.abc import Iterable
 
-from deembed.errors import JobError
+from deembed.errors import DeembedError, JobError
 
 __all__ = ["Place", "line_of", "parse_path", "path_words", "read_toml"]
 
@@ -135,6 +135,18 @@ class Place:
         line = line_of(self.text, path)
         at = f", line {line}" if line else ""
         return f"{self.name}{at}, {path_words(path)}" if path else f"{self.name}{at}"
+
+    def located(self, error: DeembedError) -> DeembedError:
+        """The same error with file and line, where it speaks of a key of the job."""
+        key, _, rest = error.where.partition(" ")
+        try:
+            line = line_of(self.text, parse_path(key))
+        except JobError:
+            return error
+        if line is None or key.startswith(self.name):
+            return error
+        where = f"{self.name}, line {line}, {key}{f' {rest}' if rest else ''}"
+        return type(error)(error.what, where=where, do=error.do)
 
     def error(self, path: Iterable[str | int], what: str, do: str = "") -> JobError:
         """The error to raise about a key."""

@@ -41,18 +41,20 @@ def edit(path: Path, old: str, new: str) -> Path:
 def test_a_missing_file(bench: Callable, refuse: Refuse) -> None:
     job = edit(bench(method="solt"), "raw/open_2.s1p", "raw/opem_2.s1p")
     assert refuse(job) == (
-        "calibration.readings[3].file: 'raw/opem_2.s1p' does not exist. Paths are relative to the job "
+        "job.toml, line 27, calibration.readings[3].file: 'raw/opem_2.s1p' does not exist. Paths are "
+        "relative to the job "
         "file; correct "
         "the name or put the file there. A file 'open_2.s1p' lies there."
     )
     edit(job, "raw/opem_2.s1p", "nowhere/open_2.s1p")
     assert refuse(job) == (
-        "calibration.readings[3].file: 'nowhere/open_2.s1p' does not exist. Its folder does not exist; "
+        "job.toml, line 27, calibration.readings[3].file: 'nowhere/open_2.s1p' does not exist. Its folder "
+        "does not exist; "
         "paths are "
         "relative to the job file."
     )
     edit(job, "nowhere/open_2.s1p", "raw")
-    assert refuse(job).startswith("calibration.readings[3].file: 'raw' is a folder. ")
+    assert refuse(job).startswith("job.toml, line 27, calibration.readings[3].file: 'raw' is a folder. ")
 
 
 def test_an_unknown_key_names_the_nearest(bench: Callable, refuse: Refuse) -> None:
@@ -147,7 +149,9 @@ def test_a_standard_that_is_not_in_the_kit(bench: Callable, refuse: Refuse) -> N
 def test_a_kit_that_is_not_there_or_not_a_kit(bench: Callable, refuse: Refuse) -> None:
     job = edit(bench(method="solt"), 'kit = "kit.toml"', 'kit = "idael"')
     message = refuse(job)
-    assert message.startswith("calibration.kit: no kit is called 'idael'. Did you mean ideal? Shipped: ")
+    assert message.startswith(
+        "job.toml, line 11, calibration.kit: no kit is called 'idael'. Did you mean ideal? Shipped: "
+    )
     assert message.endswith("or give the path of a kit file ending in .toml.")
     edit(job, 'kit = "idael"', 'kit = "kit.toml"')
     (job.parent / "kit.toml").write_text("[kit]\nname = 3\n[standards.open\n")
@@ -187,13 +191,15 @@ def test_files_with_too_few_or_too_many_ports(bench: Callable, refuse: Refuse, m
     good = job.read_text()
     edit(job, "raw/thru_12.s2p", "raw/open_1.s1p")
     assert refuse(job) == (
-        "calibration.readings[6].file: 'raw/open_1.s1p' has 1 port; needed analyzer ports 1 and 2. "
+        "job.toml, line 39, calibration.readings[6].file: 'raw/open_1.s1p' has 1 port; needed analyzer "
+        "ports 1 and 2. "
         "Give a file with 2 ports, or correct the port list."
     )
     job.write_text(good)
     edit(job, "raw/termination_3.s1p", "raw/part_12.s2p")
     assert refuse(job) == (
-        "terminations.3: 'raw/part_12.s2p' has 2 ports; needed a reflection, so one port. Give an .s1p file."
+        "job.toml, line 57, terminations.3: 'raw/part_12.s2p' has 2 ports; needed a reflection, so one "
+        "port. Give an .s1p file."
     )
     job.write_text(good)
     edit(job, "fixture/arm_2.s2p", "raw/open_1.s1p")

@@ -82,7 +82,7 @@ def test_what_cannot_be_run_gives_exit_code_2_one_message_and_nothing_else(
     said = capsys.readouterr()
     assert said.out == "" and len(said.err.splitlines()) == 1
     assert said.err.startswith(
-        "deembed: rounds[1].file: 'raw/part_23.s2p' does not exist. Paths are relative"
+        "deembed: job.toml, line 18, rounds[1].file: 'raw/part_23.s2p' does not exist. Paths are relative"
     )
     assert names(tmp_path) == ["bench"]
 

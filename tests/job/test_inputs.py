@@ -58,7 +58,8 @@ def test_tables_of_a_kit_are_inputs_too(bench: Callable[..., Path], make: dict) 
     assert abs(job.run().part.values - make["part"](f).values).max() < 1e-12
     (folder / "tables/load.s1p").unlink()
     with pytest.raises(
-        ValueError, match=r"^calibration\.kit kits/kit\.toml, tables/load\.s1p: 'kits/tables/load"
+        ValueError,
+        match=r"^job\.toml, line 11, calibration\.kit kits/kit\.toml, tables/load\.s1p: 'kits/tables/load",
     ):
         load_job(path).changed({"calibration.kit": "kits/kit.toml"}).run()
 
