@@ -170,13 +170,13 @@ def _keyword(body: str, head: _Head, where: dict, at: str) -> None:
     match = re.match(r"\[([^\]]*)\]\s*(.*)", body)
     word = match.group(1).strip().lower() if match else ""
     rest = match.group(2).strip() if match else ""
+    if where["section"] == "information":
+        where["section"] = "head" if word == "end information" else "information"
+        return
     if word not in _KEYWORDS:
         near = words.nearest(word, _KEYWORDS)
         do = f"Did you mean [{near}]?" if near else "Remove it."
         raise FileError(f"unknown keyword {body.split(']')[0]}]", where=at, do=do)
-    if where["section"] == "information":
-        where["section"] = "head" if word == "end information" else "information"
-        return
     where["section"] = {
         "network data": "data", "noise data": "done", "end": "done", "reference": "reference",
         "begin information": "information",
