@@ -33,8 +33,9 @@ def reflection_terms(
     ----------
     Rytting 2001, ARFTG short course: M = e00 + G M e11 - G (e00 e11 - e10e01), linear in its unknowns.
     """
-    rows = np.stack([np.ones_like(measured * known), known * measured, -known], axis=-1)
-    right = (measured * np.ones_like(known))[..., None]
+    measured, known = np.broadcast_arrays(measured, known)
+    rows = np.stack([np.ones_like(measured), known * measured, -known], axis=-1)
+    right = measured[..., None]
     if weights is not None:
         rows, right = rows * weights[..., None], right * weights[..., None]
     if rows.shape[-2] > 3:
