@@ -90,12 +90,13 @@ def port_terms(
         NaN for ports that do not drive.
     dims, coords, findings
     """
-    f = next(r for group in one.values() for r in group).raw.frequency.values
     driven = list(one) if driven is None else driven
+    for port in driven:
+        _enough(port, one[port])
+    f = one[driven[0]][0].raw.frequency.values
     arrays, findings, sizes = [], [], {}
     for port in driven:
         group = one[port]
-        _enough(port, group)
         findings += [
             x for r in group for x in kit.validity_findings(r.standard, f, where=f"{r.standard} {port}")
         ]

@@ -9,6 +9,9 @@ from deembed.numeric.linalg import inverse
 
 __all__ = ["reflection_terms", "seen_reflection"]
 
+# A tracking below this share of the terms whose difference it is holds no digit that counts.
+_NO_TRACKING = 1e-11
+
 
 def reflection_terms(
     measured: NDArray, known: NDArray, weights: NDArray | None = None
@@ -43,7 +46,15 @@ def reflection_terms(
         rows, right = adjoint @ rows, adjoint @ right
     x = (inverse(rows) @ right)[..., 0]
     directivity, source_match = x[..., 0], x[..., 1]
-    return directivity, source_match, directivity * source_match - x[..., 2]
+    product = directivity * source_match
+    tracking = product - x[..., 2]
+    # Two standards that are alike, or read alike, leave no tracking at all: the linear equations do not see that.
+    with np.errstate(invalid="ignore"):
+        lost = np.abs(tracking) <= _NO_TRACKING * (np.abs(product) + np.abs(x[..., 2]))
+    directivity, source_match, tracking = (
+        np.where(lost, np.nan, v) for v in (directivity, source_match, tracking)
+    )
+    return directivity, source_match, tracking
 
 
 def seen_reflection(

@@ -1,7 +1,7 @@
 """One-port terms from known reflections."""
 
 import numpy as np
-from hypothesis import assume, event, given, settings
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from deembed.numeric.sol import reflection_terms, seen_reflection
@@ -24,14 +24,8 @@ def seen_through(known, e00, e11, tracking):
     return e00 + tracking * known / (1 - e11 * known)
 
 
-def spread(known):
-    """Least distance between any two standards, over everything."""
-    n = known.shape[-1]
-    return min(np.abs(known[..., i] - known[..., j]).min() for i in range(n) for j in range(i))
-
-
 def standards(rng, shape, count):
-    """Three near open, short and load (any angle between them), the rest anywhere."""
+    """Well apart: near open, short, load and two quarter turns, 0.35 around each."""
     base = np.array([0.9, -0.9, 0.0, 0.9j, -0.9j][:count])
     return base + disk(rng, (*shape, count), 0.35)
 
@@ -42,9 +36,6 @@ def test_random_boxes_are_recovered(seed, shape, count):
     rng = np.random.default_rng(seed)
     terms = box(rng, shape)
     known = standards(rng, shape, count)
-    good = spread(known) > 0.05
-    event(f"kept {good}")
-    assume(good)
     measured = seen_through(known, *terms)
     found = reflection_terms(measured, known)
     for ours, true in zip(found, terms, strict=True):
@@ -69,10 +60,17 @@ def test_more_than_three_standards_are_a_least_squares_fit(rng):
 
 def test_equal_standards_or_readings_give_nan(rng):
     terms = box(rng, (3,))
-    known = np.array([[1.0, -1.0, 0.0], [1.0, 1.0, 0.0], [1.0, -1.0, 0.5]])
+    known = np.array([[1.0, -1.0, 0.0], [1.0, -1.0, 0.5], [1.0, 0.7, 0.0]])
     measured = seen_through(known, *terms)
-    measured[2, 0] = np.nan
+    measured[1, 0] = np.nan
+    alike = known.copy()
+    alike[2, 1] = alike[2, 0]  # said to be alike, read apart
+    for found in reflection_terms(measured, alike):
+        np.testing.assert_array_equal(np.isfinite(found), [True, False, False])
+    measured[2, 1] = measured[2, 0]  # read alike, said to be apart
     for found in reflection_terms(measured, known):
+        np.testing.assert_array_equal(np.isfinite(found), [True, False, False])
+    for found in reflection_terms(measured, alike):
         np.testing.assert_array_equal(np.isfinite(found), [True, False, False])
 
 
