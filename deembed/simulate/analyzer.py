@@ -130,7 +130,8 @@ class Analyzer:
         size = self.imperfections.repeatability
         if size == 0:
             return box
-        reflection = size * self.frequency / 10e9 * (self.rng.normal() + 1j * self.rng.normal()) / np.sqrt(2)
+        # A gap or a misplaced pin is a small reactance at the plane: its reflection grows as j w.
+        reflection = 1j * size * self.frequency / 10e9 * self.rng.normal()
         phase = size * self.frequency / 10e9 * self.rng.normal()
         through = np.sqrt(1 - np.abs(reflection) ** 2) * np.exp(-1j * phase)
         back = -reflection.conj() * np.exp(-2j * phase)
@@ -202,8 +203,9 @@ def _echoes(f: NDArray, size: float, rng: np.random.Generator, delay_s: float = 
 
 def _box(f: NDArray, rng: np.random.Generator) -> NDArray:
     delay = rng.uniform(3.2e-9, 5.2e-9)
-    loss = 10 ** (-(rng.uniform(0.3, 0.6) + rng.uniform(0.6, 0.9) * np.sqrt(f / 1e9)) / 20)
-    cable = loss * np.exp(-2j * np.pi * f * delay)
+    pad, skin = (share * np.log(10) / 20 for share in (rng.uniform(0.3, 0.6), rng.uniform(0.6, 0.9)))
+    # Skin effect turns the phase as much as it damps, or the cable would answer before it is asked.
+    cable = np.exp(-pad - (1 + 1j) * skin * np.sqrt(f / 1e9) - 2j * np.pi * f * delay)
     box = np.empty((f.size, 2, 2), dtype=complex)
     box[:, 0, 0] = _echoes(f, 10 ** (-35 / 20), rng)
     box[:, 1, 1] = _echoes(f, 10 ** (-28 / 20), rng)

@@ -61,6 +61,12 @@ class Circuit:
         """A capacitor [F]."""
         return self.admittance(a, b, 2j * np.pi * self.frequency * farad)
 
+    def gyrator(self, a: int, b: int, siemens: float) -> Circuit:
+        """A lossless one-way turn: the current into b follows the voltage at a, that into a follows minus that at b."""
+        self.y[:, b, a] += siemens
+        self.y[:, a, b] -= siemens
+        return self
+
     def line(self, a: int, b: int, *, ohm: float, gamma: NDArray, length: float) -> Circuit:
         """A transmission line over ground: impedance [ohm], propagation constant [1/m], length [m]."""
         gl = gamma * length

@@ -24,6 +24,7 @@ from deembed.simulate.analyzer import Analyzer, Imperfections, random_analyzer
 from deembed.simulate.demo_text import JOB, NOTES
 from deembed.simulate.fixtures import edge_launch_arm
 from deembed.simulate.parts import isolating_splitter
+from deembed.simulate.passives import termination
 from deembed.standards import Kit, load_kit
 from deembed.touchstone import write_touchstone
 
@@ -69,7 +70,8 @@ def write_demo(
     mistake : str, optional
         A name from `MISTAKES`, planted in the readings or files.
     points : int
-        Number of frequencies, 50 MHz to 8.05 GHz.
+        Number of frequencies, 50 MHz to 8.05 GHz. Below about 250 the phase of the cables can turn too far from
+        one point to the next to be followed, and nobody can tell the sign of a reflection from it.
     seed : int
         The same seed gives the same files, byte for byte.
 
@@ -100,8 +102,13 @@ def write_demo(
             where=str(folder),
             do="Name a new folder for the demonstration.",
         )
-    for name in ("raw", "fixture", "truth"):
-        (folder / name).mkdir(parents=True)
+    try:
+        for name in ("raw", "fixture", "truth"):
+            (folder / name).mkdir(parents=True)
+    except OSError as error:
+        raise FileError(
+            f"cannot be made ({error.strerror})", where=str(folder), do="Name a folder that you may write to."
+        ) from error
     bench = _bench(points, seed)
     _write_standards(bench, folder, mistake)
     _write_rounds(bench, folder)
@@ -127,14 +134,9 @@ def _bench(points: int, seed: int) -> _Bench:
         ),
     }
     terminations = {
-        p: sparams(
-            (size * np.exp(-2j * np.pi * f * delay + 1j * turn) * (0.4 + 0.6 * f / f[-1]))[:, None, None], f
-        )
-        for p, size, delay, turn in (
-            (1, 0.045, 95e-12, 2.4),
-            (2, 0.038, 120e-12, 0.7),
-            (3, 0.050, 80e-12, 1.6),
-        )
+        1: termination(f, resistance_ohm=51.8, inductance_h=0.10e-9, delay_s=45e-12),
+        2: termination(f, resistance_ohm=48.4, inductance_h=0.09e-9, delay_s=60e-12),
+        3: termination(f, resistance_ohm=51.2, inductance_h=0.12e-9, delay_s=40e-12),
     }
     analyzer = random_analyzer(f, rng=rng, imperfections=Imperfections())
     return _Bench(f, analyzer, load_kit(KIT), arms, isolating_splitter(f), terminations)
@@ -185,9 +187,9 @@ def _write_rounds(bench: _Bench, folder: Path) -> None:
 
 
 def _write_rest(bench: _Bench, folder: Path, mistake: str | None) -> None:
-    for port, termination in bench.terminations.items():
+    for port, closing in bench.terminations.items():
         write_touchstone(
-            termination,
+            closing,
             folder / f"raw/termination_{port}.s1p",
             provenance=_comment(f"reflection of what closed part port {port}, corrected"),
         )

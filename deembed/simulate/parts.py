@@ -113,18 +113,27 @@ def resistive_divider(
 
 
 def circulator(
-    frequency: ArrayLike, *, isolation_db: float = 22.0, loss_db: float = 0.4, delay_s: float = 60e-12
+    frequency: ArrayLike,
+    *,
+    centre_hz: float = 6.0e9,
+    slope: float = 0.6,
+    quality: float = 60.0,
+    gyration: float = 0.93,
 ) -> xr.DataArray:
     """A junction that passes waves 1 to 2 to 3 to 1; passive, not reciprocal.
 
     Parameters
     ----------
     frequency : array of shape (frequency,)
-        [Hz].
-    isolation_db, loss_db : float
-        Of the stopped and of the passed direction [dB], positive.
-    delay_s : float
-        From port to port [s].
+        [Hz], above zero.
+    centre_hz : float
+        Where its resonators are tuned [Hz].
+    slope : float
+        Susceptance of each resonator's capacitor at the centre, in units of 1/50 ohm: larger is narrower.
+    quality : float
+        Unloaded quality factor of the resonators; infinite is lossless.
+    gyration : float
+        1 circulates perfectly at the centre when lossless.
 
     Returns
     -------
@@ -132,17 +141,18 @@ def circulator(
 
     Notes
     -----
-    A lossless cyclic junction has eigenvalues of magnitude 1 on the three rotations; two small mistunings of them
-    give reflection and leakage at once, and the loss multiplies all, so that no choice of waves comes out larger.
+    Three gyrators in a ring of g = 1/50 ohm have the admittance eigenvalues 0 and +-j sqrt(3) g, hence the
+    scattering eigenvalues 1 and exp(-+j 120 degrees) of a perfect circulator; a parallel resonator at each port
+    makes it a circulator in a band only (lumped-element circulator, common textbook model).
     """
     f = np.asarray(frequency, dtype=float)
-    turn = np.exp(2j * np.pi / 3 * np.arange(3))
-    rotations = turn[:, None] ** np.arange(3)[None, :] / np.sqrt(3)
-    mistuned = 1.5 * 10 ** (-isolation_db / 20)
-    phases = np.array([1.0, -0.5, -0.5]) * mistuned
-    junction = rotations @ np.diag(turn.conj() * np.exp(1j * phases)) @ rotations.conj().T
-    through = 10 ** (-loss_db / 20) * np.exp(-2j * np.pi * f * delay_s)
-    return sparams(junction * through[:, None, None], f)
+    circuit = Circuit(f, 3)
+    resonator, w = slope / 50.0, 2 * np.pi * centre_hz
+    for port in range(3):
+        circuit.gyrator(port, (port + 1) % 3, -gyration / 50.0)
+        circuit.capacitor(port, None, resonator / w).inductor(port, None, 1 / (resonator * w))
+        circuit.admittance(port, None, resonator / quality)
+    return sparams(circuit.sparams([0, 1, 2]), f)
 
 
 def closed_coupler(

@@ -7,7 +7,8 @@ from hypothesis import strategies as st
 
 from deembed.simulate.circuit import Circuit
 from deembed.simulate.fixtures import edge_launch_arm
-from deembed.simulate.parts import PARTS, isolating_splitter, reactive_tee, resistive_divider
+from deembed.simulate.parts import PARTS, circulator, isolating_splitter, reactive_tee, resistive_divider
+from deembed.simulate.passives import line, pad, termination
 
 F = np.linspace(50e6, 12e9, 60)
 
@@ -35,6 +36,51 @@ def test_lossy_parts_stay_passive_for_any_parameters(centre, loss, ohm, farad):
     assert gain(isolating_splitter(F, centre_hz=centre, loss_db_per_m=loss, resistor_ohm=ohm)) <= 1 + 1e-10
     assert gain(resistive_divider(F, ohm=ohm / 3, shunt_farad=farad)) <= 1 + 1e-10
     assert gain(reactive_tee(F, loss_db_per_m=loss)) <= 1 + 1e-10
+
+
+def early(trace):
+    """Share of energy that answers before time zero, of a trace from one step above 0 Hz, tapered to its end."""
+    spectrum = np.concatenate([[trace[0].real], trace])
+    power = np.fft.irfft(spectrum * np.cos(np.linspace(0, np.pi / 2, spectrum.size)) ** 2) ** 2
+    return power[power.size // 2 : -12].sum() / power.sum()
+
+
+def test_nothing_answers_before_it_is_asked():
+    f = np.arange(1, 4001) * 10e6
+    things = {name: make(f) for name, make in PARTS.items()}
+    things |= {"arm": edge_launch_arm(f, length_m=0.02), "pad": pad(f, loss_db=3.0, shunt_farad=0.1e-12)}
+    things |= {"line": line(f, length_m=0.03, impedance_ohm=60.0)}
+    things |= {"termination": termination(f, resistance_ohm=52.0, inductance_h=0.1e-9, delay_s=40e-12)}
+    shares = {
+        name: max(early(t) for t in s.values.reshape(f.size, -1).T if np.abs(t).max() > 1e-9)
+        for name, s in things.items()
+    }
+    assert {name: share for name, share in shares.items() if share > 1e-6} == {}
+    # A phase that is the same at every frequency is what this must catch.
+    assert early(np.full(f.size, np.exp(0.1j))) > 1e-4
+
+
+@settings(max_examples=25, derandomize=True, deadline=None)
+@given(
+    centre=st.floats(2e9, 10e9),
+    slope=st.floats(0.05, 5.0),
+    quality=st.floats(2.0, 1e4),
+    gyration=st.floats(0.2, 3.0),
+)
+def test_a_circulator_stays_passive_for_any_parameters(centre, slope, quality, gyration):
+    s = circulator(F, centre_hz=centre, slope=slope, quality=quality, gyration=gyration)
+    assert gain(s) <= 1 + 1e-10
+
+
+def test_a_perfect_circulator_at_its_centre_passes_1_to_2_to_3_to_1():
+    s = circulator([6e9], quality=np.inf, gyration=1.0).values[0]
+    np.testing.assert_allclose(s, [[0, 0, 1], [1, 0, 0], [0, 1, 0]], atol=1e-12)
+
+
+def test_a_real_circulator_is_one_in_its_band_only():
+    s = 20 * np.log10(np.abs(circulator([3e9, 6e9]).values))
+    assert s[1, 1, 0] > -0.3 and s[1, 0, 1] < -20 and s[1, 0, 0] < -20
+    assert s[0, 0, 1] > -15
 
 
 @pytest.mark.parametrize("name", ["closed-coupler", "balun", "isolating-splitter"])
