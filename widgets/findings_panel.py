@@ -44,7 +44,7 @@ class FindingsPanel(w.VBox):
         button = w.Button(
             description=f"show {band}",
             tooltip=f"show {band} in the pictures: {line.severity}, {line.place}",
-            layout=w.Layout(width="14em", height="auto", min_width="14em"),
+            layout=w.Layout(width="17em", height="auto", min_width="17em"),
         )
         button.add_class("deembed-show")
         button.on_click(lambda _: self._show(finding))
