@@ -27,6 +27,10 @@ def test_it_runs(path, tmp_path):
     shutil.copy(path, tmp_path)
     notebook = nbformat.read(path, as_version=4)
     NotebookClient(notebook, timeout=120, resources={"metadata": {"path": str(tmp_path)}}).execute()
+    shown = [o.get("data", {}) for c in notebook.cells for o in c.get("outputs", [])]
+    assert sum("application/vnd.jupyter.widget-view+json" in d for d in shown) == 1  # the lane map
+    assert ["<svg" in d["image/svg+xml"] for d in shown if "image/svg+xml" in d] == [True]
+    assert not any("Figure(" in d.get("text/plain", "") for d in shown)  # a picture, not its name
     said = "".join(o.get("text", "") for c in notebook.cells for o in c.get("outputs", []))
     assert "Physical as far as these readings can show" in said
     assert "open 2, short 2" in said
