@@ -98,15 +98,21 @@ class Kit:
             A tabulated standard on another grid.
         """
         f = np.atleast_1d(np.asarray(frequency, dtype=float))
-        given = self._parameters(standard)
-        if given["kind"] == "table":
+        if self.kind(standard) == "table":
             s = _from_table(self.tables[standard], f, self.name, standard)
-        else:
-            values, leading, coords = _modelled(given, f, self.reference_impedance)
-            s = sparams(values, f, z0=self.reference_impedance, leading=leading).assign_coords(coords)
-        if z0 is None and given["kind"] != "table":
-            return s
-        return renormalize(s, self.reference_impedance if z0 is None else z0)
+            return renormalize(s, self.reference_impedance if z0 is None else z0)
+        values, leading, coords = self.plain(standard, f)
+        s = sparams(values, f, z0=self.reference_impedance, leading=leading).assign_coords(coords)
+        return s if z0 is None else renormalize(s, z0)
+
+    def plain(self, standard: str, frequency: NDArray) -> tuple[NDArray, tuple[str, ...], dict]:
+        """As `response` in the kit's impedance: the values, the names of their leading dims, coordinates of those."""
+        given = self._parameters(standard)
+        if given["kind"] != "table":
+            return _modelled(given, frequency, self.reference_impedance)
+        s = self.response(standard, frequency)
+        leading = tuple(map(str, s.dims[:-3]))
+        return s.values, leading, {d: s.coords[d].values for d in leading if d in s.coords}
 
     def transmission(self, standard: str, frequency: ArrayLike) -> xr.DataArray:
         """Transmission of a thru or line in its own impedance, over frequency and leading dims.
@@ -120,7 +126,7 @@ class Kit:
         given = self._parameters(standard)
         if given["kind"] == "table" and self.tables[standard].sizes["port_out"] == 2:
             s = _from_table(self.tables[standard], f, self.name, standard)
-            return s.sel(port_out=2, port_in=1, drop=True).drop_vars("z0")
+            return s.sel(port_out=2, port_in=1, drop=True).drop_vars("z0", errors="ignore")
         if given["kind"] not in ("thru", "line"):
             raise KitError(f"{standard} passes nothing on", where=f"kit {self.name}")
         plain, leading, coords = _plain_parameters(given)
@@ -254,12 +260,8 @@ def _reflection(kind: str, p: Mapping[str, Any], f: NDArray, reference: float) -
     w = 2 * np.pi * f
     if kind == "reflect":
         return p["sign"] * np.exp(-2j * w * p["offset_delay_ps"] * 1e-12)
-    gamma_l, zc = kernel.offset_constants(
-        f,
-        delay=np.asarray(p["offset_delay_ps"]) * 1e-12,
-        loss=np.asarray(p["offset_loss_gohm_per_s"]) * 1e9,
-        impedance=reference if p["offset_impedance_ohm"] is None else p["offset_impedance_ohm"],
-    )
+    bare = _no_offset(p, reference)
+    gamma_l, zc = (np.zeros(1), np.asarray(reference)) if bare else _offset(p, f, reference)
     if kind == "open":
         end = kernel.capacitor_reflection(f, kernel.polynomial(f, p["capacitance"]), zc)
     elif kind == "short":
@@ -267,7 +269,23 @@ def _reflection(kind: str, p: Mapping[str, Any], f: NDArray, reference: float) -
     else:
         resistance = reference if p["resistance_ohm"] is None else p["resistance_ohm"]
         end = kernel.impedance_reflection(resistance + 1j * w * p["inductance_h"], zc)
-    return kernel.offset_reflection(end, gamma_l, zc, reference)
+    return end if bare else kernel.offset_reflection(end, gamma_l, zc, reference)
+
+
+def _no_offset(p: Mapping[str, Any], reference: float) -> bool:
+    """Whether a termination sits right at the plane, in the reference impedance."""
+    lossless = all(np.ndim(p[k]) == 0 and p[k] == 0 for k in ("offset_delay_ps", "offset_loss_gohm_per_s"))
+    impedance = p["offset_impedance_ohm"]
+    return lossless and (impedance is None or (np.ndim(impedance) == 0 and impedance == reference))
+
+
+def _offset(p: Mapping[str, Any], f: NDArray, reference: float) -> tuple[NDArray, Any]:
+    return kernel.offset_constants(
+        f,
+        delay=np.asarray(p["offset_delay_ps"]) * 1e-12,
+        loss=np.asarray(p["offset_loss_gohm_per_s"]) * 1e9,
+        impedance=reference if p["offset_impedance_ohm"] is None else p["offset_impedance_ohm"],
+    )
 
 
 def kit_from_text(text: str, *, where: str, read_table: Callable[[str], xr.DataArray] | None = None) -> Kit:

@@ -64,10 +64,15 @@ def build_terms(
     """
     n = len(ports)
     one, two = (*dims, "port_in"), (*dims, "port_out", "port_in")
-    off = np.where(np.eye(n, dtype=bool), np.nan, 1.0)
+    own = np.arange(n)
     data: dict = {name: (one, getattr(terms, name)) for name in ONE_INDEX}
     shape = (*terms.directivity.shape, n)
-    data |= {name: (two, np.broadcast_to(getattr(terms, name) * off, shape).copy()) for name in TWO_INDEX}
+    for name in TWO_INDEX:
+        values = np.broadcast_to(getattr(terms, name), shape)
+        if not np.isnan(values[..., own, own]).all():
+            values = values.copy()
+            values[..., own, own] = np.nan
+        data[name] = (two, values)
     attrs = {"method": method, "drive": drive}
     pairs = list(combinations(range(n), 2))
     if redundancy_absent or not pairs:

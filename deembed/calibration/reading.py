@@ -17,7 +17,7 @@ from deembed.labels import check, ports_of, same_grid
 if TYPE_CHECKING:
     from deembed.standards import Kit
 
-__all__ = ["ONE_PORT_KINDS", "TWO_PORT_KINDS", "Reading", "element", "laid_out", "sorted_readings"]
+__all__ = ["ONE_PORT_KINDS", "TWO_PORT_KINDS", "Reading", "kit_kind", "sorted_readings", "unsolved"]
 
 ONE_PORT_KINDS = ("open", "short", "load", "reflect")
 TWO_PORT_KINDS = ("thru", "line")
@@ -62,33 +62,6 @@ class Reading:
         return f"{self.standard} {'-'.join(map(str, self.ports))}"
 
 
-def element(s: xr.DataArray, port_out: int, port_in: int) -> xr.DataArray:
-    """One S-parameter over frequency and leading dims, without port labels."""
-    ports = ports_of(s)
-    picked = s.variable.isel(port_out=ports.index(port_out), port_in=ports.index(port_in))
-    coords = {d: s.coords[d] for d in picked.dims if d in s.coords}
-    return xr.DataArray(picked, coords=coords)
-
-
-def laid_out(arrays: Sequence[xr.DataArray]) -> tuple[list[NDArray], tuple[str, ...], dict]:
-    """Arrays over frequency and any leading dims, as plain arrays whose dims line up.
-
-    Returns
-    -------
-    list of arrays of shape (..., frequency)
-    tuple of str
-        Names of the dims, frequency last.
-    dict
-        Their coordinates.
-    """
-    if all(a.dims == ("frequency",) for a in arrays):
-        return [a.values for a in arrays], ("frequency",), {"frequency": arrays[0].frequency.values}
-    aligned = xr.broadcast(*(a.drop_vars([c for c in a.coords if c not in a.dims]) for a in arrays))
-    aligned = tuple(a.transpose(..., "frequency") for a in aligned)
-    coords = {str(d): aligned[0].coords[d].values for d in aligned[0].dims if d in aligned[0].coords}
-    return [a.values for a in aligned], tuple(map(str, aligned[0].dims)), coords
-
-
 def sorted_readings(
     readings: Sequence[Reading], kit: Kit, ports: Sequence[int]
 ) -> tuple[dict[int, list[Reading]], dict[tuple[int, int], Reading], dict[tuple[int, int], Reading]]:
@@ -128,7 +101,7 @@ def sorted_readings(
                 where=reading.name,
             )
         pair = (min(reading.ports), max(reading.ports))
-        if pair in pairs and kit_kind(reading, kit) == kit_kind(pairs[pair], kit) != "line":
+        if pair in pairs:
             raise SolveError(
                 f"{pairs[pair].name} and {reading.name} are both given", where="calibration", do="Keep one."
             )
@@ -144,7 +117,7 @@ def kit_kind(reading: Reading, kit: Kit) -> str:
 def _is_one_port(reading: Reading, kit: Kit) -> bool:
     kind = kit.kind(reading.standard)
     if kind == "table":
-        return kit.response(reading.standard, reading.raw.frequency.values).sizes["port_out"] == 1
+        return kit.tables[reading.standard].sizes["port_out"] == 1
     return kind in ONE_PORT_KINDS
 
 

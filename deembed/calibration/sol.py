@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -11,17 +11,17 @@ import xarray as xr
 from numpy.typing import NDArray
 
 from deembed.calibration.error_terms import build_terms
-from deembed.calibration.reading import Reading, element, laid_out, sorted_readings, unsolved
-from deembed.errors import SolveError
-from deembed.findings import attach
-from deembed.labels import select_ports
+from deembed.calibration.reading import Reading, sorted_readings, unsolved
+from deembed.calibration.sweeps import Sweep, elements, laid_out, response
+from deembed.errors import PortError, SolveError
+from deembed.findings import Finding, attach
 from deembed.numeric.error_terms import Terms
 from deembed.numeric.sol import reflection_terms
 
 if TYPE_CHECKING:
     from deembed.standards import Kit
 
-__all__ = ["port_terms", "signed_standards", "solve_sol"]
+__all__ = ["port_terms", "signed_standards", "solve_sol", "stacked_terms"]
 
 
 def solve_sol(readings: Sequence[Reading], kit: Kit, *, ports: Sequence[int] = (1,)) -> xr.Dataset:
@@ -51,6 +51,9 @@ def solve_sol(readings: Sequence[Reading], kit: Kit, *, ports: Sequence[int] = (
     ----------
     Rytting 2001, ARFTG short course.
     """
+    ports = tuple(ports)
+    if not ports or len(set(ports)) != len(ports):
+        raise PortError(f"ports are {list(ports)}", where="calibration", do="Name one or more, each once.")
     one, two, apart = sorted_readings(readings, kit, ports)
     for reading in (*two.values(), *apart.values()):
         raise SolveError(
@@ -58,10 +61,11 @@ def solve_sol(readings: Sequence[Reading], kit: Kit, *, ports: Sequence[int] = (
             where="calibration",
             do="Use method solt, or leave that reading out.",
         )
-    terms, dims, coords, findings = port_terms(one, kit)
-    nothing = np.full((*terms[0].shape, len(ports)), np.nan, dtype=complex)
+    found, dims, coords, findings = port_terms(one, kit, ports)
+    own = stacked_terms(found, ports)
+    nothing = np.full((*own[0].shape, len(ports)), np.nan, dtype=complex)
     data = build_terms(
-        Terms(terms[0], terms[1], terms[2], nothing, nothing, nothing),
+        Terms(*own, nothing, nothing, nothing),
         ports=ports,
         coords=coords,
         dims=dims,
@@ -80,50 +84,56 @@ def signed_standards(one: dict[int, list[Reading]], kit: Kit) -> str:
 
 
 def port_terms(
-    one: dict[int, list[Reading]], kit: Kit, driven: Sequence[int] | None = None
-) -> tuple[list[NDArray], tuple[str, ...], dict, list]:
-    """One-port terms of each port from its reflections.
+    one: dict[int, list[Reading]], kit: Kit, driven: Sequence[int]
+) -> tuple[dict[int, tuple[NDArray, NDArray, NDArray]], tuple[str, ...], dict, list[Finding]]:
+    """One-port terms of each port that drives from its reflections.
 
     Returns
     -------
-    list of three arrays of shape (..., frequency, port)
-        NaN for ports that do not drive.
+    mapping port -> directivity, source match, reflection tracking of shape (..., frequency)
     dims, coords, findings
     """
-    driven = list(one) if driven is None else driven
     for port in driven:
         _enough(port, one[port])
     f = one[driven[0]][0].raw.frequency.values
-    arrays, findings, sizes = [], [], {}
+    models = {name: response(kit, name, f)[0][0] for port in driven for name in _names(one[port])}
+    sweeps: list[Sweep] = []
+    findings: list[Finding] = []
     for port in driven:
-        group = one[port]
-        findings += [
-            x for r in group for x in kit.validity_findings(r.standard, f, where=f"{r.standard} {port}")
-        ]
-        arrays += [element(r.raw, port, port) for r in group]
-        arrays += [element(_own(r, port, kit, f), 1, 1) for r in group]
-        sizes[port] = len(group)
-    plain, dims, coords = laid_out(arrays)
-    terms = []
-    start = 0
-    for port in one:
-        if port not in driven:
-            terms.append([np.full(plain[0].shape, np.nan, dtype=complex)] * 3)
-            continue
-        n = sizes[port]
-        measured, known = (np.stack(plain[start + k * n : start + (k + 1) * n], axis=-1) for k in (0, 1))
-        start += 2 * n
-        solved = reflection_terms(measured, known)
+        for r in one[port]:
+            sweeps += [elements(r.raw, [port])[0][0], models[r.standard]]
+            findings += kit.validity_findings(r.standard, f, where=f"{r.standard} {port}")
+    plain, dims, coords = laid_out(sweeps, f)
+    terms, start = {}, 0
+    for port in driven:
+        stop = start + 2 * len(one[port])
+        terms[port] = reflection_terms(plain[start:stop:2], plain[start + 1 : stop : 2])
+        start = stop
         unsolved(
             f,
-            dict(zip("abc", solved, strict=True)),
+            dict(zip("abc", terms[port], strict=True)),
             where=f"port {port}",
             why="the readings or the definitions of "
             + ", ".join(r.standard for r in one[port])
             + " do not differ from each other there, or are not numbers",
         )
-        terms.append(list(solved))
-    return [np.stack([t[k] for t in terms], axis=-1) for k in range(3)], dims, coords, findings
+    return terms, dims, coords, findings
+
+
+def stacked_terms(
+    terms: Mapping[int, Sequence[NDArray]], ports: Sequence[int]
+) -> tuple[NDArray, NDArray, NDArray]:
+    """The three one-port terms with ports last; NaN for ports that do not drive."""
+    shape = np.shape(next(iter(terms.values()))[0])
+    first, second, third = (np.full((*shape, len(ports)), np.nan, dtype=complex) for _ in range(3))
+    for position, port in enumerate(ports):
+        if port in terms:
+            first[..., position], second[..., position], third[..., position] = terms[port]
+    return first, second, third
+
+
+def _names(group: list[Reading]) -> list[str]:
+    return list(dict.fromkeys(r.standard for r in group))
 
 
 def _enough(port: int, group: list[Reading]) -> None:
@@ -135,8 +145,3 @@ def _enough(port: int, group: list[Reading]) -> None:
             where="calibration",
             do=f"Read {'another' if names else 'an open, a short and a load'} at port {port}.",
         )
-
-
-def _own(reading: Reading, port: int, kit: Kit, f: NDArray) -> xr.DataArray:
-    response = kit.response(reading.standard, f)
-    return select_ports(response, [1]) if response.sizes["port_out"] > 1 else response

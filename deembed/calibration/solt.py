@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -10,11 +10,11 @@ import xarray as xr
 from numpy.typing import NDArray
 
 from deembed.calibration.error_terms import build_terms
-from deembed.calibration.reading import Reading, element, laid_out, sorted_readings, unsolved
-from deembed.calibration.sol import port_terms, signed_standards
+from deembed.calibration.reading import Reading, sorted_readings, unsolved
+from deembed.calibration.sol import port_terms, signed_standards, stacked_terms
+from deembed.calibration.sweeps import Sweep, elements, laid_out, response
 from deembed.errors import JobError, PortError, SolveError
 from deembed.findings import attach
-from deembed.labels import relabel_ports
 from deembed.numeric.error_terms import Terms
 from deembed.numeric.solt import thru_terms
 
@@ -66,6 +66,7 @@ def solve_solt(
     ----------
     Rytting 2001, ARFTG short course (twelve-term model), per ordered pair of ports.
     """
+    ports = tuple(ports)
     if drive not in DRIVES:
         raise JobError(f"drive is {drive!r}", where="calibration", do=f"Use one of {', '.join(DRIVES)}.")
     if len(set(ports)) < 2 or len(set(ports)) != len(ports):
@@ -80,16 +81,13 @@ def solve_solt(
     own, dims, coords, findings = port_terms(one, kit, driven)
     f = coords["frequency"]
     for pair in wanted:
-        found = kit.validity_findings(two[pair].standard, f, where=two[pair].name)
-        findings += found
-    arrays = _two_port_arrays(ordered, two, apart if isolation else {}, kit, f)
+        findings += kit.validity_findings(two[pair].standard, f, where=two[pair].name)
     # Own terms and thrus may carry different leading dims: laid out together, they line up.
-    labelled = [xr.DataArray(t[..., i], dims=dims, coords=coords) for t in own for i in range(len(ports))]
-    plain, dims, coords = laid_out([*labelled, *arrays])
-    n = len(ports)
-    own = [np.stack(plain[k * n : (k + 1) * n], axis=-1) for k in range(3)]
-    terms = _transmission(own, plain[3 * n :], ordered, list(ports))
-    _solved(terms, ordered, ports, f)
+    sweeps = [Sweep(t, dims[:-1], coords) for d in driven for t in own[d]]
+    sweeps += _two_port_sweeps(ordered, two, apart if isolation else {}, kit, f)
+    plain, dims, coords = laid_out(sweeps, f)
+    own = {d: tuple(plain[3 * k : 3 * k + 3]) for k, d in enumerate(driven)}  # type: ignore[misc]
+    terms = _transmission(own, plain[3 * len(driven) :], ordered, ports, f)
     absent = "" if drive == "every-port" else "only the first port drives, so no relation is left over"
     data = build_terms(
         terms,
@@ -116,45 +114,45 @@ def _all_there(wanted: Sequence[Pair], have: dict[Pair, Reading], what: str) -> 
         )
 
 
-def _two_port_arrays(
+def _two_port_sweeps(
     ordered: Sequence[Pair], two: dict[Pair, Reading], apart: dict[Pair, Reading], kit: Kit, f: NDArray
-) -> list[xr.DataArray]:
+) -> list[Sweep]:
     """Per ordered pair: M_dd, M_rd, the thru's four S-parameters (driven port first), leakage."""
-    arrays = []
+    used = {(min(p), max(p)) for p in ordered}
+    models = {name: response(kit, name, f) for name in {two[pair].standard for pair in used}}
+    sweeps = []
     for r, d in ordered:
         reading = two[min(r, d), max(r, d)]
-        thru = relabel_ports(kit.response(reading.standard, f), reading.ports)
-        arrays += [element(reading.raw, d, d), element(reading.raw, r, d)]
-        arrays += [element(thru, i, j) for i in (d, r) for j in (d, r)]
+        (own, _), (across, _) = elements(reading.raw, (d, r))
+        model = models[reading.standard]
+        i, j = reading.ports.index(d), reading.ports.index(r)
+        sweeps += [own, across, model[i][i], model[i][j], model[j][i], model[j][j]]
         if apart:
-            arrays.append(element(apart[min(r, d), max(r, d)].raw, r, d))
-    return arrays
+            sweeps.append(elements(apart[min(r, d), max(r, d)].raw, (d, r))[1][0])
+    return sweeps
 
 
 def _transmission(
-    own: list[NDArray], plain: list[NDArray], ordered: Sequence[Pair], ports: list[int]
+    own: Mapping[int, tuple[NDArray, NDArray, NDArray]],
+    plain: list[NDArray],
+    ordered: Sequence[Pair],
+    ports: Sequence[int],
+    f: NDArray,
 ) -> Terms:
-    n = len(ports)
-    load, tracking, leakage = (np.full((*own[0].shape, n), np.nan, dtype=complex) for _ in range(3))
+    first, second, third = stacked_terms(own, ports)
+    load, tracking, leakage = (np.full((*first.shape, len(ports)), np.nan, dtype=complex) for _ in range(3))
     each = len(plain) // len(ordered)
     for k, (r, d) in enumerate(ordered):
-        m_dd, m_rd, *thru = plain[k * each : k * each + 6]
+        m_dd, m_rd, t_dd, t_dr, t_rd, t_rr = plain[k * each : k * each + 6]
         leak = plain[k * each + 6] if each == 7 else 0.0
-        i, j = ports.index(r), ports.index(d)
-        two_port = np.stack(thru, axis=-1).reshape(*thru[0].shape, 2, 2)
-        terms = (own[0][..., j], own[1][..., j], own[2][..., j])
-        load[..., i, j], tracking[..., i, j] = thru_terms(m_dd, m_rd, two_port, terms, leak)
-        leakage[..., i, j] = leak
-    return Terms(own[0], own[1], own[2], load, tracking, leakage)
-
-
-def _solved(terms: Terms, ordered: Sequence[Pair], ports: Sequence[int], f: NDArray) -> None:
-    for r, d in ordered:
-        i, j = list(ports).index(r), list(ports).index(d)
-        values = {"load": terms.load_match[..., i, j], "tracking": terms.transmission_tracking[..., i, j]}
+        found = thru_terms(m_dd, m_rd, (t_dd, t_dr, t_rd, t_rr), own[d], leak)
         unsolved(
             f,
-            values,
+            dict(zip(("load", "tracking"), found, strict=True)),
             where=f"thru {min(r, d)}-{max(r, d)}, port {d} driving",
             why="the thru passes nothing there, or its reading is not a number",
         )
+        i, j = ports.index(r), ports.index(d)
+        load[..., i, j], tracking[..., i, j] = found
+        leakage[..., i, j] = leak
+    return Terms(first, second, third, load, tracking, leakage)

@@ -12,7 +12,8 @@ from numpy.typing import NDArray
 
 from deembed.banding import banded_findings
 from deembed.calibration.error_terms import build_terms
-from deembed.calibration.reading import Reading, element, kit_kind, laid_out, unsolved
+from deembed.calibration.reading import Reading, kit_kind, unsolved
+from deembed.calibration.sweeps import Sweep, elements, laid_out, response, sweep_of
 from deembed.errors import PortError, SolveError
 from deembed.findings import Finding, attach
 from deembed.labels import check, ports_of, same_grid
@@ -74,15 +75,18 @@ def solve_trl(
     thru, line, reflects = _standards(readings, kit, ports)
     same_grid(*(r.raw for r in readings), names=[r.name for r in readings])
     f = thru.raw.frequency.values
-    switched = _switch_arrays(switch_terms, ports, thru)
-    arrays = [element(r.raw, i, j) for r in (thru, line) for i in ports for j in ports]
-    arrays += _reflect_arrays(reflects, ports) + switched
-    arrays += [_through(kit, line, f) / _through(kit, thru, f), _sign(kit, reflects, f)]
-    plain, dims, coords = laid_out(arrays)
+    switched = _switch_sweeps(switch_terms, ports, thru)
+    sweeps = [s for r in (thru, line) for row in elements(r.raw, ports) for s in row]
+    sweeps += _reflect_sweeps(reflects, ports) + switched
+    # In the standards' own impedance: a mismatch to the kit's reference is not the line's.
+    sweeps += [sweep_of(kit.transmission(r.standard, f)) for r in (line, thru)]
+    sweeps.append(response(kit, reflects[0].standard, f)[0][0])
+    plain, dims, coords = laid_out(sweeps, f)
     raw = [np.stack(plain[k : k + 4], axis=-1).reshape(*plain[0].shape, 2, 2) for k in (0, 4, 8)]
     switch = np.stack(plain[12:14], axis=-1)
-    free = [kernel.remove_switch_terms(m, switch) for m in raw]
-    boxes = kernel.solve(*free, line_guess=plain[14], reflect_guess=plain[15])
+    free = [kernel.remove_switch_terms(m, switch) for m in raw] if switch_terms else raw
+    guess = plain[14] / plain[15]
+    boxes = kernel.solve(*free, line_guess=guess, reflect_guess=plain[16])
     _solved(boxes, thru, line, reflects, f)
     data = build_terms(
         from_boxes(boxes.e00, boxes.e11, boxes.e10e01, boxes.forward, switch),
@@ -93,7 +97,7 @@ def solve_trl(
         method="trl",
         redundancy_absent="the terms come from one box per port, for which the relation is an identity",
     )
-    extra, attrs = _line_results(boxes, plain[14], kit, thru, line)
+    extra, attrs = _line_results(boxes, guess, kit, thru, line)
     data = data.assign({name: (dims, values) for name, values in extra.items()})
     signed = json.dumps({str(p): [reflects[0].standard] for p in ports})
     data = data.assign_attrs(
@@ -144,44 +148,38 @@ def _standards(
     return found["thru"][0], found["line"][0], found["reflect"]
 
 
-def _reflect_arrays(reflects: list[Reading], ports: tuple[int, ...]) -> list[xr.DataArray]:
+def _reflect_sweeps(reflects: list[Reading], ports: tuple[int, ...]) -> list[Sweep]:
     """The four readings with the reflect on both ports; leakage is zero where each port was read alone."""
     if len(reflects) == 1:
-        return [element(reflects[0].raw, i, j) for i in ports for j in ports]
-    by_port = {r.ports[0]: element(r.raw, r.ports[0], r.ports[0]) for r in reflects}
+        return [s for row in elements(reflects[0].raw, ports) for s in row]
+    by_port = {r.ports[0]: elements(r.raw, r.ports)[0][0] for r in reflects}
     first, second = (by_port[p] for p in ports)
-    return [first, xr.zeros_like(first), xr.zeros_like(second), second]
+    return [first, _zero(first.values), _zero(first.values), second]
 
 
-def _switch_arrays(
+def _zero(like: NDArray) -> Sweep:
+    return Sweep(np.zeros(like.shape[-1], dtype=complex))
+
+
+def _switch_sweeps(
     switch_terms: Mapping[int, xr.DataArray] | None, ports: tuple[int, ...], thru: Reading
-) -> list[xr.DataArray]:
-    zero = xr.zeros_like(element(thru.raw, *ports)).isel({d: 0 for d in thru.raw.dims[:-3]}, drop=True)
+) -> list[Sweep]:
     if not switch_terms:
-        return [zero, zero]
+        return [_zero(thru.raw.frequency)] * 2
     if sorted(switch_terms) != sorted(ports):
         raise PortError(
             f"switch terms are given at ports {sorted(switch_terms)}; needed at {list(ports)}",
             where="switch terms",
             do="Give one per port: a_r / b_r at port r while the other drives.",
         )
-    arrays = []
+    sweeps = []
     for port in ports:
         term = check(switch_terms[port], what=f"switch {port}")
         same_grid(thru.raw, term, names=("the thru", f"switch {port}"))
         if len(ports_of(term)) != 1:
             raise PortError(f"{len(ports_of(term))} ports came; needed one", where=f"switch {port}")
-        arrays.append(element(term, ports_of(term)[0], ports_of(term)[0]))
-    return arrays
-
-
-def _through(kit: Kit, reading: Reading, f: NDArray) -> xr.DataArray:
-    """Transmission in the standard's own impedance: a mismatch to the kit's reference is not the line's."""
-    return kit.transmission(reading.standard, f)
-
-
-def _sign(kit: Kit, reflects: list[Reading], f: NDArray) -> xr.DataArray:
-    return element(kit.response(reflects[0].standard, f), 1, 1)
+        sweeps.append(elements(term, ports_of(term))[0][0])
+    return sweeps
 
 
 def _solved(boxes: kernel.Boxes, thru: Reading, line: Reading, reflects: list[Reading], f: NDArray) -> None:

@@ -133,17 +133,16 @@ def redundancy(terms: Terms, d: int, r: int) -> NDArray:
     (transmission_tracking_rd / q_r)(transmission_tracking_dr / q_d) = reflection_tracking_d reflection_tracking_r;
     it follows from the terms of two boxes and their switch terms (Marks 1997, 50th ARFTG).
     """
-    product = terms.transmission_tracking[..., r, d] * terms.transmission_tracking[..., d, r]
-    for port, other in ((d, r), (r, d)):
-        product = product / _load_factor(terms, port, other)
+    tracking = terms.transmission_tracking
+    # q_r reflection_tracking_r = reflection_tracking_r + directivity_r D_r: one division for the whole relation.
+    excess = _tracking_with_load(terms, d, r) * _tracking_with_load(terms, r, d)
     with np.errstate(divide="ignore", invalid="ignore"):
-        return product / (terms.reflection_tracking[..., d] * terms.reflection_tracking[..., r]) - 1.0
+        return tracking[..., r, d] * tracking[..., d, r] / excess - 1.0
 
 
-def _load_factor(terms: Terms, port: int, drive: int) -> NDArray:
+def _tracking_with_load(terms: Terms, port: int, drive: int) -> NDArray:
     mismatch = terms.load_match[..., port, drive] - terms.source_match[..., port]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        return 1.0 + terms.directivity[..., port] * mismatch / terms.reflection_tracking[..., port]
+    return terms.reflection_tracking[..., port] + terms.directivity[..., port] * mismatch
 
 
 def implied_switch_terms(terms: Terms, r: int, d: int) -> NDArray:

@@ -76,15 +76,15 @@ def _cholesky_solve(
                         total = -product if total is None else total - product
                 if total is not None:
                     lower[i_order, j] = total / root
-        x = list(right)
+        terms = list(right)
         for j in range(order):
             for k_order in range(j):
                 if (j, k_order) in lower:
-                    x[j] = x[j] - lower[j, k_order] * x[k_order]
-            x[j] = x[j] / lower[j, j]
+                    terms[j] = terms[j] - lower[j, k_order] * terms[k_order]
+            terms[j] = terms[j] / lower[j, j]
         for j in reversed(range(order)):
             for k_order in range(j + 1, order):
                 if (k_order, j) in lower:
-                    x[j] = x[j] - np.conj(lower[k_order, j]) * x[k_order]
-            x[j] = x[j] / lower[j, j]
-        return [np.where(good, value, np.nan) for value in x]
+                    terms[j] = terms[j] - np.conj(lower[k_order, j]) * terms[k_order]
+            terms[j] = terms[j] / lower[j, j]
+        return [np.where(good, value, np.nan) for value in terms]

@@ -5,15 +5,13 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from deembed.numeric.sol import seen_reflection
-
 __all__ = ["thru_terms"]
 
 
 def thru_terms(
     measured_drive: NDArray,
     measured_receive: NDArray,
-    thru: NDArray,
+    thru: tuple[NDArray, NDArray, NDArray, NDArray],
     drive_terms: tuple[NDArray, NDArray, NDArray],
     isolation: NDArray | float,
 ) -> tuple[NDArray, NDArray]:
@@ -23,8 +21,8 @@ def thru_terms(
     ----------
     measured_drive, measured_receive : complex arrays of shape (...)
         M_dd and M_rd, read with the thru connected and port d driven.
-    thru : complex array of shape (..., 2, 2)
-        Its S-parameters, driven port first.
+    thru : four complex arrays of shape (...)
+        Its T_dd, T_dr, T_rd and T_rr.
     drive_terms : three complex arrays of shape (...)
         Directivity, source match and reflection tracking of port d.
     isolation : complex array of shape (...) or 0
@@ -41,9 +39,14 @@ def thru_terms(
     into it, T_dd + T_dr T_rd L / (1 - T_rr L), is solved for the load L.
     """
     directivity, source_match, reflection_tracking = drive_terms
-    rest = seen_reflection(measured_drive, *drive_terms) - thru[..., 0, 0]
+    t_dd, t_dr, t_rd, t_rr = thru
+    rest = measured_drive - directivity
     with np.errstate(divide="ignore", invalid="ignore"):
-        load = rest / (thru[..., 0, 1] * thru[..., 1, 0] + thru[..., 1, 1] * rest)
-        into = 1.0 + source_match * (measured_drive - directivity) / reflection_tracking
-        out = thru[..., 1, 0] * into / (1.0 - thru[..., 1, 1] * load)
-        return load, (measured_receive - isolation) / out
+        # Into the thru: b / a = rest / below, with b and a at the driven port.
+        below = reflection_tracking + source_match * rest
+        beyond = rest - t_dd * below
+        passed = t_dr * t_rd * below
+        load = beyond / (passed + t_rr * beyond)
+        # Out of it: T_rd a / (1 - T_rr L), with a = below / reflection_tracking.
+        out = t_rd * below / (1.0 - t_rr * load)
+        return load, (measured_receive - isolation) * reflection_tracking / out

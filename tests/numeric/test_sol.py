@@ -4,9 +4,18 @@ import numpy as np
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from deembed.numeric.sol import reflection_terms, seen_reflection
+from deembed.numeric import sol
+from deembed.numeric.sol import seen_reflection
 
 SEEDS = st.integers(0, 2**32 - 1)
+
+
+def reflection_terms(measured, known, weights=None):
+    """The solver, standards last."""
+    split = [
+        None if x is None else list(np.moveaxis(np.asarray(x), -1, 0)) for x in (measured, known, weights)
+    ]
+    return sol.reflection_terms(*split)
 
 
 def disk(rng, shape, radius=0.9):
