@@ -87,6 +87,7 @@ def draw_chart(
     reach = 1.0
     curves: list[Artist] = []
     more = _grid(ax, style, admittance=admittance)
+    ends_at: list[complex] = []
     for t in picture.traces:
         inside = (t.frequency >= low) & (t.frequency <= high)
         f, x, y = t.frequency[inside], t.x[inside], t.y[inside]
@@ -105,9 +106,13 @@ def draw_chart(
             markeredgewidth=1.8, color=style.hue(t.hue),
         )  # fmt: skip
         more += ax.plot(x[good[-1:]], y[good[-1:]], marker=mark, markersize=6, color=style.hue(t.hue))
+        end = complex(x[good[-1]], y[good[-1]])
+        # Names of curves that end together stand under each other.
+        below = 16 * sum(abs(end - other) < 0.15 for other in ends_at)
+        ends_at.append(end)
         more.append(
             ax.annotate(
-                t.name, (x[good[-1]], y[good[-1]]), xytext=(7, 5), textcoords="offset points",
+                t.name, (end.real, end.imag), xytext=(7, 5 - below), textcoords="offset points",
                 color=style.ink, fontsize=style.text_pt, fontweight="bold",
             )
         )  # fmt: skip

@@ -9,6 +9,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from matplotlib.backends.backend_agg import FigureCanvasAgg
 
 from deembed.errors import DeembedError
 from deembed.plots import draw, figure, lane_map_svg, svg
@@ -357,3 +358,16 @@ def test_long_notes_are_wrapped(fake):
     narrow, wide = layout_of(lanes, width=640), layout_of(lanes, width=1400)
     assert narrow.height > wide.height
     assert all(len(t) * 7 < 640 for t in texts(lane_map_svg(lanes, width=640)))
+
+
+def test_names_of_curves_that_end_together_do_not_overlap():
+    x = np.linspace(0.0, 0.5, 50)
+    traces = tuple(
+        Trace(n, x, 0 * x, hue=k, frequency=np.linspace(1e9, 2e9, 50)) for k, n in enumerate(("S22", "S33"))
+    )
+    picture = Picture("chart", "Chart", "", traces, kind="reflection")
+    shown = figure(picture, width=500, height=500)
+    FigureCanvasAgg(shown).draw()
+    names = [t for t in shown.axes[0].texts if t.get_text() in ("S22", "S33")]
+    first, second = (t.get_window_extent() for t in names)
+    assert len(names) == 2 and not first.overlaps(second)
