@@ -246,7 +246,7 @@ def _modelled(
 
 def _transmission(p: Mapping[str, Any], f: NDArray) -> NDArray:
     if p.get("delay_ps") is not None:
-        return np.exp(-2j * np.pi * f * p["delay_ps"] * 1e-12)
+        return kernel.matched_transmission(2j * np.pi * f, np.asarray(p["delay_ps"]) * 1e-12)
     gamma = kernel.line_constant(
         f,
         permittivity=p["effective_permittivity"],
@@ -259,7 +259,7 @@ def _transmission(p: Mapping[str, Any], f: NDArray) -> NDArray:
 def _reflection(kind: str, p: Mapping[str, Any], f: NDArray, reference: float) -> NDArray:
     w = 2 * np.pi * f
     if kind == "reflect":
-        return p["sign"] * np.exp(-2j * w * p["offset_delay_ps"] * 1e-12)
+        return p["sign"] * kernel.matched_transmission(2j * w, np.asarray(p["offset_delay_ps"]) * 1e-12)
     bare = _no_offset(p, reference)
     gamma_l, zc = (np.zeros(1), np.asarray(reference)) if bare else _offset(p, f, reference)
     if kind == "open":

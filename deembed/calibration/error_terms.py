@@ -82,11 +82,11 @@ def build_terms(
         data["redundancy"] = ((*dims, "pair"), residual)
         coords = {**coords, "pair": np.array([f"{ports[d]}-{ports[r]}" for d, r in pairs])}
     labels = np.asarray(ports)
-    data_set = xr.Dataset(data, coords={**coords, "port_out": labels, "port_in": labels}, attrs=attrs)
-    like = data_set.load_match if isinstance(z0, xr.DataArray) or np.ndim(z0) else None
-    if like is None:
-        return data_set.assign_coords(z0=("port_out", np.full(n, complex(z0))))  # type: ignore[arg-type]
-    return data_set.assign_coords(z0=with_z0(like, z0).coords["z0"].variable)
+    coords = {**coords, "port_out": labels, "port_in": labels}
+    if not isinstance(z0, xr.DataArray) and np.ndim(z0) == 0:
+        return xr.Dataset(data, coords | {"z0": ("port_out", np.full(n, complex(z0)))}, attrs)  # type: ignore[arg-type]
+    data_set = xr.Dataset(data, coords, attrs)
+    return data_set.assign_coords(z0=with_z0(data_set.load_match, z0).coords["z0"].variable)
 
 
 def plain_terms(
