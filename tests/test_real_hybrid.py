@@ -89,9 +89,9 @@ def test_no_gain_is_claimed_below_2_ghz(assembly):
 def test_the_verdict_says_so_and_names_the_rounds_that_disagree(assembly):
     findings = [*assembly.findings, *assess(assembly.part, expect=EXPECT)[1]]
     sentence = verdict(findings, expect=EXPECT)
-    assert sentence.startswith("Not believable as a passive part between 2.463")
+    assert sentence.startswith("Not believable as a passive part in 2 bands between 2.463 and 4.4 GHz: ")
     assert "worst at 4.056 GHz" in sentence
-    assert "disagreement at round 1-2, round 3-1, part port 1 (3.819 to 4.4 GHz)" in sentence
+    assert "look first at round 1-2, round 3-1, part port 1 (disagreement)" in sentence
 
 
 def test_every_reflection_was_read_twice_and_its_mean_is_the_part(assembly, rounds):

@@ -81,7 +81,7 @@ have shown: a mistake that leaves a passive part behind, such as a wrong length,
 
 
 def _not_believable(against: Sequence[Finding]) -> str:
-    """Properties and the band they all span; the reason of the worst finding of the first property."""
+    """Each property with the band it fails in; the reason of the worst finding of the first property."""
     by_name: dict[str, list[Finding]] = {}
     for finding in against:
         by_name.setdefault(_NOT_AS.get(finding.kind, ""), []).append(finding)
@@ -95,9 +95,9 @@ def _not_believable(against: Sequence[Finding]) -> str:
     worst = max(main, key=lambda f: f.worst or 0.0)
     ports = ", ".join(dict.fromkeys(f.where for f in main if f.where))
     place = f" ({ports})" if ports and len(main) == 1 else ""
-    span = _span([f for name in names for f in by_name[name]])
-    head = f"Not believable as a {words.listed(names, last='or')} part {span}{place}: {_reason(worst)}"
-    return "; ".join([head, *other])
+    head = f"Not believable as a {names[0]} part {_span(first)}{place}: {_reason(worst)}"
+    rest = [f"nor as a {name} part {_span(by_name[name])}" for name in names[1:]]
+    return "; ".join([head, *rest, *other])
 
 
 def _lower(text: str) -> str:

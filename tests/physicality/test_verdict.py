@@ -47,8 +47,8 @@ def test_a_second_contradiction_joins_the_first_and_gain_gives_the_reason():
         s[5:10, 0, 1] += 0.1
 
     assert of_part(change) == (
-        "Not believable as a passive or reciprocal part in 2 bands between 1.5 and 4.4 GHz: the part would give "
-        "out up to 5 % more wave amplitude than it receives (worst at 2.6 GHz)."
+        "Not believable as a passive part between 2.6 and 4.4 GHz: the part would give out up to 5 % more wave "
+        "amplitude than it receives (worst at 2.6 GHz); nor as a reciprocal part between 1.5 and 1.9 GHz."
     )
 
 

@@ -59,7 +59,7 @@ def test_terminations_are_as_good_as_good_ones_are(tmp_path):
 
 def test_exchanged_standards_are_named_with_their_port(outcomes):
     _, outcome = outcomes["standards-exchanged"]
-    assert outcome.verdict.startswith("Not believable as a passive or reciprocal part")
+    assert outcome.verdict.startswith("Not believable as a passive part")
     assert "open 2, short 2" in outcome.verdict
     signs = [f for f in outcome.findings if f.kind == "tracking-sign"]
     assert [f.where for f in signs] == ["open 2, short 2"]
