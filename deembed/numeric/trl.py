@@ -200,10 +200,13 @@ def solve(
     """
     t_thru, t_line = s_to_t(thru), s_to_t(line)
     ratio, directivity, match_ratio = line_ratio(t_thru, t_line, line_guess)
-    # Two eigenvalues that coincide leave the box open: below this difference no digit is left.
-    ratio = np.where(np.abs(ratio - 1 / ratio) > 1e-9, ratio, np.nan)
     own = (reflect[..., 0, 0], reflect[..., 1, 1])
-    g = reflect_found(t_thru, own, directivity, match_ratio, reflect_guess)
+    with np.errstate(all="ignore"):
+        # Two eigenvalues that coincide leave the box open: below this difference no digit is left.
+        ratio = np.where(np.abs(ratio - 1 / ratio) > 1e-9, ratio, np.nan)
+        g = reflect_found(t_thru, own, directivity, match_ratio, reflect_guess)
+        # A reflect of nothing: what rounding errors leave of it is below this.
+        g = np.where(np.abs(g) > 1e-6, g, np.nan)
     one = np.ones(ratio.shape)
     standards = [{(0, 1): one, (1, 0): one}, {(0, 1): ratio, (1, 0): ratio}, {(0, 0): g, (1, 1): g}]
     return Boxes(*eight_terms([thru, line, reflect], standards), ratio, g)

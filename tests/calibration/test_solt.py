@@ -135,15 +135,12 @@ def test_standards_read_on_two_ports_at_once_and_a_thru_named_backwards(bench, r
 
 def test_a_nonreciprocal_tabulated_thru_is_taken_the_way_it_was_connected(bench, rng):
     table = bench.random_part(rng, F, (1, 2)) * 0.5 + sparams([[[0, 0.6], [0.5, 0]]] * F.size, F)
-    text = "\n".join(
-        '[standards.{0}]\nkind = "{1}"'.format(*s)
-        for s in (("open", "open"), ("short", "short"), ("load", "load"))
-    )
+    text = "".join(f'[standards.{kind}]\nkind = "{kind}"\n' for kind in ("open", "short", "load"))
     text = f'[kit]\nname = "own"\n{text}\n[standards.amplifier]\nkind = "table"\nfile = "a.s2p"\n'
     kit = kit_from_text(text, where="own.toml", read_table=lambda _: table)
     true = bench.random_terms(rng, F, (1, 2))
     for pair in ((1, 2), (2, 1)):
-        readings = bench.one_port_readings(true, kit, (1, 2)) + [bench.read(true, kit, "amplifier", pair)]
+        readings = [*bench.one_port_readings(true, kit, (1, 2)), bench.read(true, kit, "amplifier", pair)]
         terms = solve_solt(readings, kit)
         for name in TERMS:
             assert bench.worst(terms[name], true[name]) < 1e-9, (pair, name)
