@@ -114,3 +114,27 @@ def test_one_seed_gives_one_analyzer():
     np.testing.assert_array_equal(a.boxes, b.boxes)
     short = sparams(-np.ones((F.size, 1, 1)), F)
     np.testing.assert_array_equal(a.read(short).values, b.read(short).values)
+
+
+def test_leakage_comes_from_the_driven_port_into_the_receiver(rng):
+    analyzer = random_analyzer(F, rng=rng, ports=3, imperfections=QUIET)
+    nothing = sparams(np.zeros((F.size, 3, 3)), F)
+    raw = analyzer.read(nothing).values
+    for receiver, drive in ((0, 1), (1, 0), (2, 0), (0, 2)):
+        np.testing.assert_allclose(
+            raw[:, receiver, drive], analyzer.leakage[:, receiver, drive], rtol=1e-12, atol=0
+        )
+
+
+def test_cables_turn_the_phase_by_skin_effect_as_much_as_they_damp(rng):
+    f = np.linspace(50e6, 8e9, 1601)
+    for box in random_analyzer(f, rng=rng).boxes:
+        both_ways = box[:, 0, 1] * box[:, 1, 0]
+        root = np.sqrt(f / 1e9)
+        loss = np.linalg.lstsq(np.stack([np.ones_like(f), root], -1), -np.log(np.abs(both_ways)), rcond=None)[
+            0
+        ][1]
+        phase = np.unwrap(np.angle(both_ways))
+        steps = np.stack([np.diff(f), np.diff(root)], -1) / [1e9, 1]
+        turn = -np.linalg.lstsq(steps, np.diff(phase), rcond=None)[0][1]
+        assert turn == pytest.approx(loss, rel=1e-6)

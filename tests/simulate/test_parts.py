@@ -5,6 +5,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from deembed import networks
 from deembed.simulate.circuit import Circuit
 from deembed.simulate.fixtures import edge_launch_arm
 from deembed.simulate.parts import PARTS, circulator, isolating_splitter, reactive_tee, resistive_divider
@@ -116,6 +117,18 @@ def test_an_arm_is_passive_reciprocal_and_not_symmetric():
     assert gain(arm) <= 1 + 1e-12
     np.testing.assert_allclose(arm.values[:, 0, 1], arm.values[:, 1, 0], atol=1e-12)
     assert np.abs(arm.values[:, 0, 0] - arm.values[:, 1, 1]).max() > 0.02
+
+
+def test_the_launch_sits_at_the_connector_capacitance_first():
+    """Chain matrices of shunt C and series L, then the line (common circuit theory)."""
+    w = 2j * np.pi * F
+    zero, one = np.zeros_like(w), np.ones_like(w)
+    shunt = np.stack([one, zero, w * 0.15e-12, one], -1).reshape(-1, 2, 2)
+    series = np.stack([one, w * 0.3e-9, zero, one], -1).reshape(-1, 2, 2)
+    launch = networks.from_chain(networks.chain(line(F, length_m=0.0)).copy(data=shunt @ series))
+    wanted = networks.cascade(launch, line(F, length_m=0.02, impedance_ohm=52.0))
+    arm = edge_launch_arm(F, length_m=0.02, impedance_ohm=52.0)
+    np.testing.assert_allclose(arm.values, wanted.values, atol=1e-12)
 
 
 def test_an_arm_delays_as_long_as_its_line():
