@@ -9,11 +9,6 @@ from pathlib import Path
 from typing import Any
 
 import ipywidgets as w
-from deembed.widgets.findings_panel import FindingsPanel
-from deembed.widgets.lane_panel import LanePanel
-from deembed.widgets.picture_panel import PicturePanel
-from deembed.widgets.segment_panel import SegmentPanel
-from deembed.widgets.style import css, para
 
 from deembed.errors import DeembedError
 from deembed.findings import Finding
@@ -21,6 +16,11 @@ from deembed.views.inventory import pictures
 from deembed.views.lane_map import lane_map
 from deembed.views.model import room_around
 from deembed.views.sentences import CAUTIONS, blind_lines, unwitnessed
+from deembed.widgets.findings_panel import FindingsPanel
+from deembed.widgets.lane_panel import LanePanel
+from deembed.widgets.picture_panel import PicturePanel
+from deembed.widgets.segment_panel import SegmentPanel
+from deembed.widgets.style import css, para
 
 __all__ = ["Lanes"]
 

@@ -18,7 +18,7 @@ _NOT_AS = {
     "three-way": "reciprocal",
 }
 # Causes before symptoms: a calibration at odds with itself explains what rounds and part then show.
-_LOOK_FIRST = ("tracking-sign", "arm-direction", "redundancy", "line-phase", "terms-size", "disagreement")
+_LOOK_FIRST = ("tracking-sign", "redundancy", "arm-direction", "line-phase", "terms-size", "disagreement")
 _MOST_PLACES = 2
 # Said when the job's blind spots were not worked out: true of any job.
 _ALWAYS_UNSEEN = (

@@ -9,7 +9,7 @@ import deembed
 from deembed.errors import FileError, JobError
 from deembed.simulate.demo import MISTAKES, write_demo
 
-POINTS = 201
+POINTS = 401
 
 
 @pytest.fixture(scope="module")

@@ -5,11 +5,11 @@ import re
 from html import escape
 
 import pytest
-from deembed.widgets import Lanes
 
 from deembed.errors import DeembedError
 from deembed.job import load_job
 from deembed.simulate.demo import write_demo
+from deembed.widgets import Lanes
 
 
 @pytest.fixture(scope="module")
