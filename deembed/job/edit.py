@@ -60,7 +60,8 @@ def _set(document: Any, path: tuple[str | int, ...], value: Any) -> None:
     elif isinstance(last, int) and last == len(at):
         at.append(_table(value) if isinstance(at, AoT) else value)
     elif isinstance(last, int) and isinstance(at, AoT):
-        at[last] = _table(value)
+        del at[last]  # older tomlkit cannot assign to an entry
+        at.insert(last, _table(value))
     else:
         at[last] = _tables(value)
 
