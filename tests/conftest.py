@@ -1,6 +1,8 @@
 """Fixtures for all tests."""
 
+import importlib.util
 import os
+import sys
 from pathlib import Path
 
 import numpy as np
@@ -39,3 +41,20 @@ def measured():
             pytest.fail(reason)
         pytest.skip(reason)
     return folder
+
+
+@pytest.fixture(scope="session")
+def fake():
+    """The module that makes outcomes up."""
+    path = Path(__file__).with_name("fake_outcome.py")
+    spec = importlib.util.spec_from_file_location("fake_outcome", path)
+    module = importlib.util.module_from_spec(spec)
+    sys.modules["fake_outcome"] = module
+    spec.loader.exec_module(module)
+    return module
+
+
+@pytest.fixture(scope="session")
+def outcome(fake):
+    """A lossy splitter with a planted gain, three rounds, three arms, findings at known places."""
+    return fake.fake_outcome(401)

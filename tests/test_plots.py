@@ -1,11 +1,9 @@
 """Drawings show the numbers of their pictures, label themselves, and leave no figure behind."""
 
-import importlib.util
 import re
 import subprocess
 import sys
 import xml.etree.ElementTree as ET
-from pathlib import Path
 
 import numpy as np
 import pytest
@@ -19,20 +17,6 @@ from deembed.plots_lines import _placed, _spread, frequency_unit
 from deembed.plots_style import LANE_THEMES, THEMES
 from deembed.views import Picture, Trace, lane_map, pictures
 from deembed.views.model import Band
-
-
-@pytest.fixture(scope="module")
-def fake():
-    spec = importlib.util.spec_from_file_location("fake_outcome", Path(__file__).parent / "fake_outcome.py")
-    module = importlib.util.module_from_spec(spec)
-    sys.modules["fake_outcome"] = module
-    spec.loader.exec_module(module)
-    return module
-
-
-@pytest.fixture(scope="module")
-def outcome(fake):
-    return fake.fake_outcome(401)
 
 
 @pytest.fixture(scope="module")
