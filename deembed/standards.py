@@ -123,16 +123,22 @@ class Kit:
             A standard that is neither thru, line nor a tabulated two-port.
         """
         f = np.atleast_1d(np.asarray(frequency, dtype=float))
+        values, leading, coords = self.plain_transmission(standard, f)
+        return xr.DataArray(values, dims=(*leading, "frequency"), coords={**coords, "frequency": f})
+
+    def plain_transmission(self, standard: str, frequency: NDArray) -> tuple[NDArray, tuple[str, ...], dict]:
+        """As `transmission`: the values, the names of their leading dims, coordinates of those."""
         given = self._parameters(standard)
         if given["kind"] == "table" and self.tables[standard].sizes["port_out"] == 2:
-            s = _from_table(self.tables[standard], f, self.name, standard)
-            return s.sel(port_out=2, port_in=1, drop=True).drop_vars("z0", errors="ignore")
+            s = _from_table(self.tables[standard], frequency, self.name, standard)
+            leading = tuple(map(str, s.dims[:-3]))
+            return s.values[..., 1, 0], leading, {d: s.coords[d].values for d in leading if d in s.coords}
         if given["kind"] not in ("thru", "line"):
             raise KitError(f"{standard} passes nothing on", where=f"kit {self.name}")
         plain, leading, coords = _plain_parameters(given)
-        values = _transmission(plain, f)
-        values = np.broadcast_to(values, (*values.shape[: len(leading)], f.size))
-        return xr.DataArray(values, dims=(*leading, "frequency"), coords={**coords, "frequency": f})
+        values = _transmission(plain, frequency)
+        shape = (*values.shape[: len(leading)], frequency.size)
+        return np.broadcast_to(values, shape), leading, coords
 
     def length(self, standard: str) -> float | None:
         """Length [m] of a thru or line; None where the kit gives a delay, or the standard is neither."""
@@ -245,15 +251,20 @@ def _modelled(
 
 
 def _transmission(p: Mapping[str, Any], f: NDArray) -> NDArray:
-    if p.get("delay_ps") is not None:
-        return kernel.matched_transmission(2j * np.pi * f, np.asarray(p["delay_ps"]) * 1e-12)
+    delay, length = p.get("delay_ps"), p["length_m"]
+    if delay is None and length is None:
+        length = 0.0
+    if not np.any(delay if length is None else length):
+        return np.ones(f.shape, dtype=complex)
+    if length is None:
+        return kernel.matched_transmission(2j * np.pi * f, np.asarray(delay) * 1e-12)
     gamma = kernel.line_constant(
         f,
         permittivity=p["effective_permittivity"],
         loss_db_per_m=p["loss_db_per_m_at_1ghz"],
         cutoff=p["cutoff_hz"],
     )
-    return kernel.matched_transmission(gamma, 0.0 if p["length_m"] is None else p["length_m"])
+    return kernel.matched_transmission(gamma, length)
 
 
 def _reflection(kind: str, p: Mapping[str, Any], f: NDArray, reference: float) -> NDArray:

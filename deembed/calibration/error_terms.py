@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from itertools import combinations
+from types import MappingProxyType
 
 import numpy as np
 import xarray as xr
@@ -36,6 +37,7 @@ def build_terms(
     method: str,
     drive: str = "every-port",
     redundancy_absent: str = "",
+    extra: Mapping[str, NDArray] = MappingProxyType({}),
 ) -> xr.Dataset:
     """Label plain error terms.
 
@@ -57,6 +59,8 @@ def build_terms(
         ``every-port`` or ``first-port-only``.
     redundancy_absent : str
         Why the redundancy residual means nothing here; computed where empty.
+    extra : mapping name -> array of shape (..., frequency)
+        What the method found besides.
 
     Returns
     -------
@@ -66,6 +70,7 @@ def build_terms(
     one, two = (*dims, "port_in"), (*dims, "port_out", "port_in")
     own = np.arange(n)
     data: dict = {name: (one, getattr(terms, name)) for name in ONE_INDEX}
+    data |= {name: (tuple(dims), values) for name, values in extra.items()}
     shape = (*terms.directivity.shape, n)
     for name in TWO_INDEX:
         values = np.broadcast_to(getattr(terms, name), shape)

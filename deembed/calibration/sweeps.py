@@ -18,7 +18,7 @@ from deembed.labels import ports_of
 if TYPE_CHECKING:
     from deembed.standards import Kit
 
-__all__ = ["Sweep", "elements", "laid_out", "response", "sweep_of"]
+__all__ = ["Sweep", "elements", "laid_out", "response"]
 
 
 class Sweep(NamedTuple):
@@ -57,13 +57,6 @@ def response(kit: Kit, standard: str, frequency: NDArray) -> list[list[Sweep]]:
     values, leading, coords = kit.plain(standard, frequency)
     n = values.shape[-1]
     return [[Sweep(values[..., i, j], leading, coords) for j in range(n)] for i in range(n)]
-
-
-def sweep_of(quantity: xr.DataArray) -> Sweep:
-    """A quantity over (..., frequency)."""
-    quantity = quantity.transpose(..., "frequency")
-    leading = quantity.dims[:-1]
-    return Sweep(quantity.values, leading, _own_coords(quantity, leading))
 
 
 def laid_out(sweeps: Sequence[Sweep], frequency: NDArray) -> tuple[list[NDArray], tuple[str, ...], dict]:

@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from deembed.banding import banded_findings
 from deembed.calibration.error_terms import build_terms
 from deembed.calibration.reading import Reading, kit_kind, unsolved
-from deembed.calibration.sweeps import Sweep, elements, laid_out, response, sweep_of
+from deembed.calibration.sweeps import Sweep, elements, laid_out, response
 from deembed.errors import PortError, SolveError
 from deembed.findings import Finding, attach
 from deembed.labels import check, ports_of, same_grid
@@ -79,7 +79,7 @@ def solve_trl(
     sweeps = [s for r in (thru, line) for row in elements(r.raw, ports) for s in row]
     sweeps += _reflect_sweeps(reflects, ports) + switched
     # In the standards' own impedance: a mismatch to the kit's reference is not the line's.
-    sweeps += [sweep_of(kit.transmission(r.standard, f)) for r in (line, thru)]
+    sweeps += [Sweep(*kit.plain_transmission(r.standard, f)) for r in (line, thru)]
     sweeps.append(response(kit, reflects[0].standard, f)[0][0])
     plain, dims, coords = laid_out(sweeps, f)
     raw = [np.stack(plain[k : k + 4], axis=-1).reshape(*plain[0].shape, 2, 2) for k in (0, 4, 8)]
@@ -88,6 +88,7 @@ def solve_trl(
     guess = plain[14] / plain[15]
     boxes = kernel.solve(*free, line_guess=guess, reflect_guess=plain[16])
     _solved(boxes, thru, line, reflects, f)
+    extra, attrs = _line_results(boxes, guess, kit, thru, line)
     data = build_terms(
         from_boxes(boxes.e00, boxes.e11, boxes.e10e01, boxes.forward, switch),
         ports=ports,
@@ -96,13 +97,11 @@ def solve_trl(
         z0=kit.reference_impedance,
         method="trl",
         redundancy_absent="the terms come from one box per port, for which the relation is an identity",
+        extra=extra,
     )
-    extra, attrs = _line_results(boxes, guess, kit, thru, line)
-    data = data.assign({name: (dims, values) for name, values in extra.items()})
     signed = json.dumps({str(p): [reflects[0].standard] for p in ports})
-    data = data.assign_attrs(
-        attrs | {"signed_standards": signed} | {"switch_terms": "given" if switch_terms else "taken as zero"}
-    )
+    attrs |= {"signed_standards": signed, "switch_terms": "given" if switch_terms else "taken as zero"}
+    data = data.assign_attrs(attrs)
     findings = _validity(kit, thru, line, f) + line_phase_findings(data, f"{line.standard} {_pair(ports)}")
     return attach(data, findings)
 
@@ -198,11 +197,11 @@ def _solved(boxes: kernel.Boxes, thru: Reading, line: Reading, reflects: list[Re
 def _line_results(
     boxes: kernel.Boxes, guess: NDArray, kit: Kit, thru: Reading, line: Reading
 ) -> tuple[dict[str, NDArray], dict[str, str]]:
-    expected = -np.log(np.abs(guess)) - 1j * np.unwrap(np.angle(guess), axis=-1)
-    constant = -np.log(boxes.line)
-    turns = np.round((expected.imag - constant.imag) / (2 * np.pi))
-    constant = constant + 2j * np.pi * turns
-    results = {"line_phase": np.degrees(constant.imag), "reflect": boxes.reflect}
+    expected = -np.unwrap(np.angle(guess), axis=-1)
+    phase = -np.angle(boxes.line)
+    phase = phase + 2 * np.pi * np.round((expected - phase) / (2 * np.pi))
+    constant = -np.log(np.abs(boxes.line)) + 1j * phase
+    results = {"line_phase": np.degrees(phase), "reflect": boxes.reflect}
     lengths = kit.length(line.standard), kit.length(thru.standard)
     attrs = {"reference_plane": "middle of the thru", "reference_impedance": "the line's own"}
     if None in lengths:

@@ -48,5 +48,5 @@ def thru_terms(
         passed = t_dr * t_rd * below
         load = beyond / (passed + t_rr * beyond)
         # Out of it: T_rd a / (1 - T_rr L), with a = below / reflection_tracking.
-        out = t_rd * below / (1.0 - t_rr * load)
-        return load, (measured_receive - isolation) * reflection_tracking / out
+        received = (measured_receive - isolation) * reflection_tracking
+        return load, received * (1.0 - t_rr * load) / (t_rd * below)

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from deembed.numeric.blocks import in_blocks
 from deembed.numeric.least_squares import solve_rows
 from deembed.numeric.linalg import inverse
 from deembed.numeric.sparams import s_to_t
@@ -125,7 +126,7 @@ def reflect_found(
 
 
 def eight_terms(
-    readings_of_standards: list[NDArray], standards: list[dict[tuple[int, int], NDArray]]
+    readings_of_standards: list[NDArray], standards: list[dict[tuple[int, int], NDArray | float]]
 ) -> tuple[NDArray, NDArray, NDArray, NDArray]:
     """Two error boxes from two-port standards that are all known, least squares over every reading.
 
@@ -133,7 +134,7 @@ def eight_terms(
     ----------
     readings_of_standards : list of complex arrays of shape (..., 2, 2)
         Free of switch terms.
-    standards : list of mappings (i, j) -> complex array of shape (...)
+    standards : list of mappings (i, j) -> complex array of shape (...) or number
         S-parameters of each standard that are not zero.
 
     Returns
@@ -147,23 +148,24 @@ def eight_terms(
     T1 = (-D1, -k D2), T2 = (e00_1, k e00_2), T3 = -(e11_1, k e11_2), T4 = (1, k), D = e00 e11 - e10e01:
     twelve equations for seven unknowns where three standards are read.
     """
-    row_terms: list[dict[int, NDArray]] = []
+    row_terms: list[dict[int, NDArray | float]] = []
     right_terms: list[NDArray | float] = []
-    for m, s in zip(readings_of_standards, standards, strict=True):
+    for reading, s in zip(readings_of_standards, standards, strict=True):
+        m = np.ascontiguousarray(np.moveaxis(reading, (-2, -1), (0, 1)))
         for i in range(2):
             for j in range(2):
-                terms: dict[int, NDArray] = {}
+                terms: dict[int, NDArray | float] = {}
                 if i == j:
-                    terms[0 if i == 0 else 3] = np.ones(m.shape[:-2])
+                    terms[0 if i == 0 else 3] = 1.0
                 if (i, j) in s:
                     terms[2 if i == 0 else 5] = -s[i, j]
                 for port in range(2):
                     if (port, j) in s:
-                        terms[1 if port == 0 else 4] = m[..., i, port] * s[port, j]
+                        terms[1 if port == 0 else 4] = m[i, port] * s[port, j]
                 if j == 1:
-                    terms[6] = -m[..., i, 1]
+                    terms[6] = -m[i, 1]
                 row_terms.append(terms)
-                right_terms.append(m[..., i, 0] if j == 0 else 0.0)
+                right_terms.append(m[i, 0] if j == 0 else 0.0)
     e00, e11, d1, k_e00, k_e11, k_d2, k = solve_rows(row_terms, right_terms, 7)
     with np.errstate(all="ignore"):
         first = (e00, e11, e00 * e11 - d1)
@@ -198,6 +200,13 @@ def solve(
     Line and reflect are found in closed form (Engen & Hoer 1979). The readings then hold twelve equations for
     seven unknowns; the boxes are their least-squares solution, so that no reading is thrown away.
     """
+    found = in_blocks(_solve, thru, line, reflect, line_guess, reflect_guess, core=(2, 2, 2, 0, 0))
+    return Boxes(*found)
+
+
+def _solve(
+    thru: NDArray, line: NDArray, reflect: NDArray, line_guess: NDArray, reflect_guess: NDArray
+) -> tuple[NDArray, ...]:
     t_thru, t_line = s_to_t(thru), s_to_t(line)
     ratio, directivity, match_ratio = line_ratio(t_thru, t_line, line_guess)
     own = (reflect[..., 0, 0], reflect[..., 1, 1])
@@ -207,6 +216,6 @@ def solve(
         g = reflect_found(t_thru, own, directivity, match_ratio, reflect_guess)
         # A reflect of nothing: what rounding errors leave of it is below this.
         g = np.where(np.abs(g) > 1e-6, g, np.nan)
-    one = np.ones(ratio.shape)
-    standards = [{(0, 1): one, (1, 0): one}, {(0, 1): ratio, (1, 0): ratio}, {(0, 0): g, (1, 1): g}]
-    return Boxes(*eight_terms([thru, line, reflect], standards), ratio, g)
+    standards: list[dict[tuple[int, int], NDArray | float]] = [{(0, 1): 1.0, (1, 0): 1.0}]
+    standards += [{(0, 1): ratio, (1, 0): ratio}, {(0, 0): g, (1, 1): g}]
+    return (*eight_terms([thru, line, reflect], standards), ratio, g)

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from deembed.calibration import Reading
-from deembed.calibration.sweeps import Sweep, elements, laid_out, response, sweep_of
+from deembed.calibration.sweeps import Sweep, elements, laid_out, response
 from deembed.errors import DeembedError, GridError, PortError
 from deembed.labels import sparams
 from deembed.standards import load_kit
@@ -90,14 +90,6 @@ def test_leading_dims_that_disagree_are_named():
     )
     with pytest.raises(GridError, match=whole(text)):
         laid_out([here, there], F)
-
-
-def test_a_quantity_without_ports_keeps_its_leading_dims_in_front():
-    quantity = (
-        numbered([1], (("draw", 2),)).sel(port_out=1, port_in=1, drop=True).transpose("frequency", "draw")
-    )
-    sweep = sweep_of(quantity)
-    assert sweep.leading == ("draw",) and sweep.values.shape == (2, 3)
 
 
 def test_a_model_of_the_kit_is_the_labelled_response_element_by_element():
