@@ -15,6 +15,7 @@ import xarray as xr
 
 from deembed.errors import FileError
 from deembed.findings import BlindSpot, Finding, Suspect
+from deembed.job.figures import figures
 
 if TYPE_CHECKING:
     from deembed.job.job import Job
@@ -168,13 +169,14 @@ def writable(part: xr.DataArray) -> xr.DataArray:
 
 
 def findings_json(outcome: Outcome) -> str:
-    """Findings, suspects and blind spots as JSON."""
+    """Verdict, findings, suspects, blind spots and the figures people quote, as JSON."""
     content = {
         "version": 1,
         "verdict": outcome.verdict,
         "findings": [f.as_dict() for f in outcome.findings],
         "suspects": [s.as_dict() for s in outcome.suspects],
         "blind_spots": [b.as_dict() for b in outcome.blind_spots],
+        "figures": figures(outcome),
     }
     return json.dumps(content, indent=2, ensure_ascii=False, allow_nan=False) + "\n"
 

@@ -46,7 +46,7 @@ def test_a_run_writes_four_files_and_says_the_verdict_first(
     for finding in outcome.findings:
         assert finding.text in said.out
     content = json.loads((out / "findings.json").read_text())
-    assert list(content) == ["version", "verdict", "findings", "suspects", "blind_spots"]
+    assert list(content) == ["version", "verdict", "findings", "suspects", "blind_spots", "figures"]
     assert content["version"] == 1 and content["suspects"] == []
     assert content["findings"] == [f.as_dict() for f in outcome.findings]
     assert set(content["findings"][0]) == {
