@@ -21,7 +21,7 @@ import numpy as np  # noqa: E402
 import skrf  # noqa: E402
 
 from deembed import __version__  # noqa: E402
-from deembed.calibration import Reading, solve_solt, solve_trl  # noqa: E402
+from deembed.calibration import Reading, correct, solve_solt, solve_trl  # noqa: E402
 from deembed.labels import relabel_ports, sparams  # noqa: E402
 from deembed.simulate.analyzer import Imperfections, random_analyzer  # noqa: E402
 from deembed.standards import Kit, load_kit  # noqa: E402
@@ -43,15 +43,16 @@ def on_both(kit: Kit, standard: str, f: np.ndarray):
     return sparams(kit.response(standard, f).values * np.eye(2), f)
 
 
-def timed(work: Callable[[], object]) -> tuple[float, object]:
-    """Median time [s] of several runs after one to warm up, and the last result."""
-    work()
-    times = []
+def timed(*works: Callable[[], object]) -> tuple[list[float], list]:
+    """Median times [s] of several runs, taken in turn so that all see the same machine, and the last results."""
+    results = [work() for work in works]
+    times: list[list[float]] = [[] for _ in works]
     for _ in range(ROUNDS):
-        start = time.perf_counter()
-        result = work()
-        times.append(time.perf_counter() - start)
-    return median(times), result
+        for number, work in enumerate(works):
+            start = time.perf_counter()
+            results[number] = work()
+            times[number].append(time.perf_counter() - start)
+    return [median(t) for t in times], results
 
 
 def analyzer(f: np.ndarray):
@@ -99,8 +100,7 @@ def solt() -> tuple[float, float, float]:
         calibration = skrf.calibration.SOLT(measured=measured, ideals=ideals, n_thrus=1)
         return calibration.coefs
 
-    slow, coefficients = timed(theirs)
-    fast, terms = timed(lambda: solve_solt(readings, kit))
+    (slow, fast), (coefficients, terms) = timed(theirs, lambda: solve_solt(readings, kit))
     return slow, fast, twelve_terms_agree(terms, coefficients)
 
 
@@ -130,11 +130,8 @@ def trl() -> tuple[float, float, float]:
         )
         return calibration.coefs, calibration
 
-    slow, (_, calibration) = timed(theirs)
-    fast, terms = timed(lambda: solve_trl(readings, kit))
+    (slow, fast), ((_, calibration), terms) = timed(theirs, lambda: solve_trl(readings, kit))
     read = device.read(part)
-    from deembed.calibration import correct
-
     other = calibration.apply_cal(network(read)).s
     return slow, fast, float(np.abs(correct(terms, read).values - other).max())
 

@@ -66,7 +66,7 @@ impedance_ohm = 61.0
     st.booleans(),
     st.sampled_from([(), (("draw", 3),), (("part", 2), ("draw", 2))]),
 )
-@settings(max_examples=60)
+@settings(max_examples=40)
 def test_random_analyzers_are_recovered(bench, seed, count, thru, isolation, leading):
     rng = np.random.default_rng(seed)
     ports = tuple(int(p) for p in rng.permutation(np.arange(1, count + 1)))
