@@ -171,12 +171,14 @@ def lanes_svg(lane_map: LaneMap, *, selected: str | None, width: float, style: T
     out = [
         f'<defs><pattern id="{uid}-hatch" width="7" height="7" patternUnits="userSpaceOnUse" '
         f'patternTransform="rotate(45)"><rect width="7" height="7" fill="{style.paper}"/>'
-        f'<line x1="0" y1="0" x2="0" y2="7" stroke="{style.ink}" stroke-width="2.2"/></pattern></defs>'
+        f'<line x1="0" y1="0" x2="0" y2="7" stroke="{style.ink}" stroke-width="2.2"/></pattern></defs>',
+        _rect(0, 0, at.width, at.height, f'fill="{style.sheet}"'),
     ]
     foot = at.rows_end + 14
-    out.append(_line(at.part_x, TOP - 10, at.part_x, foot, style.ink, 1.4, dash="10 3"))
-    out.append(_text(at.part_x + 2, TOP - 24, "part plane", style.ink, anchor="end"))
-    out.append(_text(at.part_x + 10, TOP - 24, "part port", style.ink))
+    # The rule runs up between the two words it parts.
+    out.append(_line(at.part_x, TOP - 38, at.part_x, foot, style.ink, 1.4, dash="10 3"))
+    out.append(_text(at.part_x - 6, TOP - 24, "part plane", style.ink, anchor="end"))
+    out.append(_text(at.part_x + 8, TOP - 24, "part port", style.ink))
     out.append(_text(LEFT, TOP - 24, "analyzer", style.ink))
     for n, lane in enumerate(lane_map.lanes):
         top, _, bottom = at.rows[lane.part_port]

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from dataclasses import dataclass
 
 from deembed.views.lane_map import Lane, LaneMap
@@ -132,16 +133,20 @@ def segment_boxes(lane_map: LaneMap, *, width: float = 960) -> dict[str, tuple[f
 
 
 def caption(lane: Lane, room: float) -> list[str]:
-    """What is noted along a lane, with shapes, in words, in lines that fit."""
-    told: dict[str, None] = {}
+    """What is noted along a lane, with shapes, in words, like with like, in lines that fit."""
+    noted: dict[tuple[str, str], dict[str, None]] = {}
     for s in lane.segments:
         if s.state not in ("plain", "absent"):
-            name = s.where if s.kind in ("error-box", "analyzer-port") else s.title.lower()
-            told[f"{SHAPES[s.state]} {name}: {s.state_words}"] = None
-    lines: list[str] = []
-    for one in told:
-        if lines and 7.6 * (len(lines[-1]) + 3 + len(one)) < room - LEFT:
-            lines[-1] += f",  {one}"
+            name = "cable plane" if s.kind == "cable-plane" else s.where
+            noted.setdefault((SHAPES[s.state], s.state_words), {})[name] = None
+    told = []
+    for (shape, said), names in noted.items():
+        if len(names) == 1:
+            told.append(f"{shape} {next(iter(names))}: {said}")
         else:
-            lines.append(one)
-    return lines
+            told.append(f"{shape} {said} each: {', '.join(names)}")
+    # Lines break between names, never inside one.
+    kept = [t.replace(" ", "\N{NO-BREAK SPACE}") for t in told]
+    text = "; ".join(t.replace(f",\N{NO-BREAK SPACE}", ", ") for t in kept)
+    lines = textwrap.wrap(text, max(int((room - LEFT) / 7.6), 24))
+    return [line.replace("\N{NO-BREAK SPACE}", " ") for line in lines]

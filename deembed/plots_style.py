@@ -30,7 +30,7 @@ MARKERS = ("o", "s", "^", "D", "v", "P", "X")
 
 @dataclass(frozen=True)
 class Theme:
-    """Inks of one theme; `sheet` is what pictures stand on, ``none`` where the page itself will do."""
+    """Inks of one theme; `sheet` is what pictures stand on, so that they can be read on any page."""
 
     name: str
     paper: str
@@ -50,13 +50,13 @@ class Theme:
 _ON_PAPER = (_BLUE, _VERMILLION, "#000000", _PURPLE, _ORANGE, _SKY, _GREEN)
 
 THEMES = {
-    "light": Theme("light", "#ffffff", "#1b1b1b", "#c9c9c9", "#e9e6df", "#f6dcc3", "none", _ON_PAPER),
+    "light": Theme("light", "#ffffff", "#1b1b1b", "#c9c9c9", "#e9e6df", "#f6dcc3", "#ffffff", _ON_PAPER),
     # Pictures on a dark page stand on a dimmed sheet of their own: dark curves on paper, as everywhere else.
     "dark": Theme("dark", "#d6d2c8", "#151515", "#a9a59b", "#c3beb2", "#e3b98e", "#d6d2c8", _ON_PAPER),
 }
 LANE_THEMES = {
     "light": THEMES["light"],
-    "dark": Theme("dark", "#242424", "#ececec", "#5a5a5a", "#3a3833", "#5c4025", "none", (_SKY,)),
+    "dark": Theme("dark", "#242424", "#ececec", "#5a5a5a", "#3a3833", "#5c4025", "#242424", (_SKY,)),
 }
 
 

@@ -13,10 +13,7 @@ def main() -> None:
     with tempfile.TemporaryDirectory() as folder:
         outcome = deembed.load_job(write_demo(Path(folder) / "demo")).run()
     drawing = lane_map_svg(lane_map(outcome))
-    # A page may be dark where this is shown alone: give the drawing its own paper.
-    head, _, rest = drawing.partition(">")
-    paper = '<rect width="100%" height="100%" fill="#ffffff"/>'
-    Path(__file__).with_name("lane-map.svg").write_text(f"{head}>{paper}{rest}\n", encoding="utf-8")
+    Path(__file__).with_name("lane-map.svg").write_text(f"{drawing}\n", encoding="utf-8")
 
 
 if __name__ == "__main__":

@@ -261,8 +261,9 @@ def test_ink_is_readable_on_everything_it_stands_on(theme):
         assert contrast(theme.ink, under) >= 7
 
 
-def test_a_dark_page_gets_dark_curves_on_a_sheet_of_their_own(inventory):
-    assert figure(inventory["part.gain"], theme="dark").patch.get_facecolor()[3] == 1.0
+def test_pictures_bring_their_own_sheet_so_that_any_page_will_do(inventory):
+    for theme in THEMES:
+        assert figure(inventory["part.gain"], theme=theme).patch.get_facecolor()[3] == 1.0
     assert THEMES["dark"].hues == THEMES["light"].hues
 
 
@@ -342,6 +343,8 @@ def test_long_notes_are_wrapped(fake):
     narrow, wide = layout_of(lanes, width=640), layout_of(lanes, width=1400)
     assert narrow.height > wide.height
     assert all(len(t) * 7 < 640 for t in texts(lane_map_svg(lanes, width=640)))
+    said = " ".join(texts(lane_map_svg(lanes, width=640)))
+    assert "1 warning each: port 2, port 1, cable plane, arm 2, part port 2" in said
 
 
 def test_names_of_curves_that_end_together_do_not_overlap():

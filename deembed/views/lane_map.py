@@ -222,6 +222,6 @@ def _part(outcome: Any, findings: Sequence[Finding]) -> Segment:
         state.name,
         state.words,
         holds.part(outcome),
-        "part.gain",
+        "part.transmission" if outcome.part.sizes["port_out"] > 1 else "part.reflection",
         state.findings,
     )

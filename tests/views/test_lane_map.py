@@ -131,7 +131,7 @@ def test_every_picture_a_segment_names_exists(lanes, outcome):
     inventory = pictures(outcome)
     named = {s.picture_name for s in lanes.segments}
     assert named <= set(inventory)
-    assert {"arm.1", "terms.port-2", "cable-plane.3", "part.gain"} <= named
+    assert {"arm.1", "terms.port-2", "cable-plane.3", "part.transmission"} <= named
 
 
 def test_without_calibration_and_fixture_segments_say_so(outcome):
