@@ -42,22 +42,30 @@ class _Offset(_Standard):
 
 
 class Open(_Offset):
+    """An open: capacitance polynomial behind an offset line."""
+
     kind: Literal["open"]
     capacitance: tuple[Number, ...] = ()
 
 
 class Short(_Offset):
+    """A short: inductance polynomial behind an offset line."""
+
     kind: Literal["short"]
     inductance: tuple[Number, ...] = ()
 
 
 class Load(_Offset):
+    """A load: resistance and series inductance behind an offset line."""
+
     kind: Literal["load"]
     resistance_ohm: NotNegative | None = None
     inductance_h: Number = 0.0
 
 
 class Reflect(_Standard):
+    """A reflect of which only the sign and the offset are guessed."""
+
     kind: Literal["reflect"]
     sign: Literal[1, -1] = -1
     offset_delay_ps: NotNegative = 0.0
@@ -71,6 +79,8 @@ class _Line(_Standard):
 
 
 class Thru(_Line):
+    """A thru: flush, or of a stated delay or length."""
+
     kind: Literal["thru"]
     delay_ps: NotNegative | None = None
     length_m: NotNegative | None = None
@@ -83,11 +93,15 @@ class Thru(_Line):
 
 
 class Line(_Line):
+    """A line of a stated length."""
+
     kind: Literal["line"]
     length_m: Positive
 
 
 class Table(_Standard):
+    """A standard tabulated in a Touchstone file."""
+
     kind: Literal["table"]
     file: str
 
@@ -105,6 +119,8 @@ KINDS = tuple(MODELS)
 
 
 class KitTable(_Table):
+    """The [kit] table: name, description, reference impedance."""
+
     name: str
     description: str = ""
     reference_impedance_ohm: Positive = 50.0
