@@ -40,6 +40,19 @@ class Plant(ast.NodeTransformer):
             return True
         return False
 
+    def visit_arg(self, node):
+        return node  # a changed annotation changes nothing
+
+    def visit_FunctionDef(self, node):
+        node.args = self.visit(node.args)
+        node.body = [self.visit(part) for part in node.body]
+        return node
+
+    def visit_AnnAssign(self, node):
+        if node.value is not None:
+            node.value = self.visit(node.value)
+        return node
+
     def visit_BinOp(self, node):
         self.generic_visit(node)
         swap = {ast.Add: ast.Sub, ast.Sub: ast.Add}.get(type(node.op))
