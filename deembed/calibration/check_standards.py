@@ -65,7 +65,7 @@ def normalized_error(
     reference = select_ports(reference, ports_of(measured))
     z0 = measured.z0.drop_vars([c for c in measured.z0.coords if c not in measured.z0.dims])
     reference = renormalize(reference, z0)
-    total: float | xr.DataArray = 0.0
+    total = xr.DataArray(0.0)
     for name, value in (("uncertainty", uncertainty), ("reference_uncertainty", reference_uncertainty)):
         u = value if isinstance(value, xr.DataArray) else xr.DataArray(np.asarray(value, dtype=float))
         if not (np.isfinite(u) & (u >= 0)).all():
@@ -75,11 +75,11 @@ def normalized_error(
                 do="Give a standard uncertainty of 0 or more, as wave amplitude.",
             )
         total = total + (COVERAGE * u) ** 2
-    if (np.asarray(total) == 0).any():
+    if bool((total == 0).any()):
         raise DeembedError(
             "both uncertainties are zero", where="check standard", do="State at least one of them."
         )
-    error = np.abs(measured.drop_vars("z0") - reference.drop_vars("z0")) / np.sqrt(total)
+    error = abs(measured.drop_vars("z0") - reference.drop_vars("z0")) / total**0.5
     return error.transpose(..., *CORE).rename("normalized_error")
 
 
