@@ -12,7 +12,7 @@ from deembed import words
 from deembed.banding import banded_findings
 from deembed.findings import Finding, finding_id
 
-__all__ = ["REDUNDANCY_FLOOR", "check_terms", "equivalent_delay"]
+__all__ = ["REDUNDANCY_FLOOR", "check_terms", "equivalent_delay", "noise_of"]
 
 # Redundancy residual below which hardware alone explains it: eight connections that repeat to -50 dB at 10 GHz
 # leave up to 3.3 % in 160 simulated calibrations to 8.5 GHz (the limit itself: common practice, no source).
@@ -84,8 +84,18 @@ def _through_origin(frequency: NDArray, phase: NDArray) -> float:
     return float(np.polyfit(frequency, phase, 1)[0] * frequency[0])
 
 
-def _noise(values: NDArray) -> float:
-    """Standard deviation of a smooth complex trace's noise, from second differences of neighbours."""
+def noise_of(values: NDArray) -> float:
+    """Standard deviation of a smooth trace's noise, from second differences of neighbours.
+
+    Parameters
+    ----------
+    values : complex array of shape (frequency,)
+
+    Returns
+    -------
+    float
+        0 for fewer than five points.
+    """
     if values.size < 5:
         return 0.0
     second = np.diff(values, 2)
@@ -103,7 +113,7 @@ def _redundancy(terms: xr.Dataset, inverted: list[int]) -> list[Finding]:
         if not good.any():
             continue
         size = np.where(good, np.abs(residual), 0.0)
-        limit = max(REDUNDANCY_FLOOR, _NOISE_FACTOR * _noise(residual[good]))
+        limit = max(REDUNDANCY_FLOOR, _NOISE_FACTOR * noise_of(residual[good]))
         # One point beyond six noises is chance; a fault of a standard is not a point.
         over = size > limit
         if over.mean() < 0.01:

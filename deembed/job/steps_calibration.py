@@ -76,7 +76,9 @@ def terms(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
     solved = method.solve(own_readings, own_kit, setup)
     found = [*findings_of(solved), *check_terms(solved), *notes, *_validity(own_kit, own_readings)]
     if not method.uses_switch_terms:
-        found += _unused_switch_terms(spec)
+        from deembed.calibration.witness import switch_term_findings
+
+        found += [*_unused_switch_terms(spec), *switch_term_findings(solved, switch)]
     return solved, tuple(found)
 
 
@@ -117,7 +119,7 @@ def _unused_switch_terms(spec: JobFile) -> tuple[Finding, ...]:
     some = "port" if len(ports) == 1 else "ports"
     text = (
         f"The recorded switch terms of analyzer {some} {words.listed(ports)} were not "
-        f"applied: method {spec.calibration.method} does not use them."
+        f"applied: method {spec.calibration.method} does not use them, but compares them with what its terms imply."
     )
     return (Finding(finding_id("switch-terms-unused", where), "switch-terms-unused", where, "note", text),)
 

@@ -218,8 +218,11 @@ def test_recorded_switch_terms_are_not_applied_to_solt_and_that_is_said(
     outcome = load_job(path).changed({"analyzer.switch_terms": {1: "raw/switch_1.s1p"}}).run()
     assert off(outcome, truth()) < 1e-12
     assert [f.text for f in outcome.findings if f.kind == "switch-terms-unused"] == [
-        "The recorded switch terms of analyzer port 1 were not applied: method solt does not use them."
+        "The recorded switch terms of analyzer port 1 were not applied: method solt does not use them, "
+        "but compares them with what its terms imply."
     ]
+    (witness,) = (f for f in outcome.findings if f.kind == "switch-terms")
+    assert (witness.where, witness.severity) == ("switch 1", "warning")
 
 
 def test_a_job_is_immutable_and_changes_into_another(bench: Bench) -> None:
