@@ -13,17 +13,15 @@ import numpy as np
 import xarray as xr
 from numpy.typing import ArrayLike, NDArray
 
+from deembed import standard_models as models
 from deembed import words
-from deembed.errors import FileError, GridError, KitError
+from deembed.errors import FileError, KitError
 from deembed.findings import Finding, bands_over, finding_id
 from deembed.kit_schema import parse_kit
 from deembed.labels import ports_of, relabel_ports, sparams
 from deembed.networks import renormalize
-from deembed.numeric import standards as kernel
 
 __all__ = ["Kit", "kit_from_text", "load_kit", "shipped_kits"]
-
-_OWN = ("kind", "description", "contact", "valid_hz", "file")
 
 
 @dataclass(frozen=True)
@@ -99,7 +97,7 @@ class Kit:
         """
         f = np.atleast_1d(np.asarray(frequency, dtype=float))
         if self.kind(standard) == "table":
-            s = _from_table(self.tables[standard], f, self.name, standard)
+            s = models.from_table(self.tables[standard], f, self.name, standard)
             return renormalize(s, self.reference_impedance if z0 is None else z0)
         values, leading, coords = self.plain(standard, f)
         s = sparams(values, f, z0=self.reference_impedance, leading=leading).assign_coords(coords)
@@ -109,7 +107,7 @@ class Kit:
         """As `response` in the kit's impedance: the values, the names of their leading dims, coordinates of those."""
         given = self._parameters(standard)
         if given["kind"] != "table":
-            return _modelled(given, frequency, self.reference_impedance)
+            return models.modelled(given, frequency, self.reference_impedance)
         s = self.response(standard, frequency)
         leading = tuple(map(str, s.dims[:-3]))
         return s.values, leading, {d: s.coords[d].values for d in leading if d in s.coords}
@@ -130,13 +128,13 @@ class Kit:
         """As `transmission`: the values, the names of their leading dims, coordinates of those."""
         given = self._parameters(standard)
         if given["kind"] == "table" and self.tables[standard].sizes["port_out"] == 2:
-            s = _from_table(self.tables[standard], frequency, self.name, standard)
+            s = models.from_table(self.tables[standard], frequency, self.name, standard)
             leading = tuple(map(str, s.dims[:-3]))
             return s.values[..., 1, 0], leading, {d: s.coords[d].values for d in leading if d in s.coords}
         if given["kind"] not in ("thru", "line"):
             raise KitError(f"{standard} passes nothing on", where=f"kit {self.name}")
-        plain, leading, coords = _plain_parameters(given)
-        values = _transmission(plain, frequency)
+        plain, leading, coords = models.plain_parameters(given)
+        values = models.transmission(plain, frequency)
         shape = (*values.shape[: len(leading)], frequency.size)
         return np.broadcast_to(values, shape), leading, coords
 
@@ -192,113 +190,6 @@ class Kit:
         return replace(self, standards=MappingProxyType({**self.standards, standard: new}))
 
 
-def _from_table(table: xr.DataArray, f: NDArray, kit: str, standard: str) -> xr.DataArray:
-    own = table.frequency.values
-    if own.size == f.size and np.allclose(own, f, rtol=1e-12, atol=0):
-        return table.assign_coords(frequency=f)
-    index = np.searchsorted(own, f)
-    index = np.clip(index, 0, own.size - 1)
-    index = np.where(np.abs(own[np.maximum(index - 1, 0)] - f) < np.abs(own[index] - f), index - 1, index)
-    if not np.allclose(own[index], f, rtol=1e-12, atol=0):
-        raise GridError(
-            f"the table has {words.grid(own)}; the readings have {words.grid(f)}, and not all of these are in it",
-            where=f"kit {kit}, standards.{standard}",
-            do="Tabulate the standard on the grid of the readings.",
-        )
-    return table.isel(frequency=index).assign_coords(frequency=f)
-
-
-def _plain_parameters(given: Mapping[str, Any]) -> tuple[dict[str, Any], tuple[str, ...], dict]:
-    """Parameters as arrays with one trailing axis for frequency, leading dims lined up by name."""
-    arrays = [v for v in _values(given) if isinstance(v, xr.DataArray)]
-    leading = tuple(dict.fromkeys(str(d) for a in arrays for d in a.dims))
-    coords = {d: a.coords[d].values for a in arrays for d in a.dims if d in a.coords}
-
-    def plain(value: Any) -> Any:
-        if isinstance(value, xr.DataArray):
-            return (
-                value.expand_dims([d for d in leading if d not in value.dims])
-                .transpose(*leading)
-                .values[..., None]
-            )
-        if isinstance(value, tuple | list):
-            return [plain(v) for v in value]
-        return value
-
-    return {name: plain(v) for name, v in given.items() if name not in _OWN}, leading, coords
-
-
-def _values(given: Mapping[str, Any]) -> list:
-    flat: list = []
-    for value in given.values():
-        flat += list(value) if isinstance(value, tuple | list) else [value]
-    return flat
-
-
-def _modelled(
-    given: Mapping[str, Any], f: NDArray, reference: float
-) -> tuple[NDArray, tuple[str, ...], dict]:
-    p, leading, coords = _plain_parameters(given)
-    kind = given["kind"]
-    if kind in ("thru", "line"):
-        impedance = reference if p["impedance_ohm"] is None else p["impedance_ohm"]
-        values = kernel.mismatched_line(_transmission(p, f), impedance, reference)
-    else:
-        values = _reflection(kind, p, f, reference)[..., None, None]
-    n = values.shape[-1]
-    shape = np.broadcast_shapes(values.shape, (*([1] * len(leading)), f.size, n, n))
-    return np.broadcast_to(values, shape), leading, coords
-
-
-def _transmission(p: Mapping[str, Any], f: NDArray) -> NDArray:
-    delay, length = p.get("delay_ps"), p["length_m"]
-    if delay is None and length is None:
-        length = 0.0
-    if not np.any(delay if length is None else length):
-        return np.ones(f.shape, dtype=complex)
-    if length is None:
-        return kernel.matched_transmission(2j * np.pi * f, np.asarray(delay) * 1e-12)
-    gamma = kernel.line_constant(
-        f,
-        permittivity=p["effective_permittivity"],
-        loss_db_per_m=p["loss_db_per_m_at_1ghz"],
-        cutoff=p["cutoff_hz"],
-    )
-    return kernel.matched_transmission(gamma, length)
-
-
-def _reflection(kind: str, p: Mapping[str, Any], f: NDArray, reference: float) -> NDArray:
-    w = 2 * np.pi * f
-    if kind == "reflect":
-        return p["sign"] * kernel.matched_transmission(2j * w, np.asarray(p["offset_delay_ps"]) * 1e-12)
-    bare = _no_offset(p, reference)
-    gamma_l, zc = (np.zeros(1), np.asarray(reference)) if bare else _offset(p, f, reference)
-    if kind == "open":
-        end = kernel.capacitor_reflection(f, kernel.polynomial(f, p["capacitance"]), zc)
-    elif kind == "short":
-        end = kernel.impedance_reflection(1j * w * kernel.polynomial(f, p["inductance"]), zc)
-    else:
-        resistance = reference if p["resistance_ohm"] is None else p["resistance_ohm"]
-        end = kernel.impedance_reflection(resistance + 1j * w * p["inductance_h"], zc)
-    return end if bare else kernel.offset_reflection(end, gamma_l, zc, reference)
-
-
-def _no_offset(p: Mapping[str, Any], reference: float) -> bool:
-    """Whether a termination sits right at the plane, in the reference impedance."""
-    lossless = all(np.ndim(p[k]) == 0 and p[k] == 0 for k in ("offset_delay_ps", "offset_loss_gohm_per_s"))
-    impedance = p["offset_impedance_ohm"]
-    return lossless and (impedance is None or (np.ndim(impedance) == 0 and impedance == reference))
-
-
-def _offset(p: Mapping[str, Any], f: NDArray, reference: float) -> tuple[NDArray, Any]:
-    return kernel.offset_constants(
-        f,
-        delay=np.asarray(p["offset_delay_ps"]) * 1e-12,
-        loss=np.asarray(p["offset_loss_gohm_per_s"]) * 1e9,
-        impedance=reference if p["offset_impedance_ohm"] is None else p["offset_impedance_ohm"],
-    )
-
-
 def kit_from_text(text: str, *, where: str, read_table: Callable[[str], xr.DataArray] | None = None) -> Kit:
     """A kit from the text of a kit file.
 
@@ -320,9 +211,9 @@ def kit_from_text(text: str, *, where: str, read_table: Callable[[str], xr.DataA
     KitError
         What the file must not hold, by key and line; a tabulated standard that cannot be read here.
     """
-    head, models = parse_kit(text, where=where)
+    head, described = parse_kit(text, where=where)
     tables = {}
-    for name, model in models.items():
+    for name, model in described.items():
         path = getattr(model, "file", None)
         if path is None:
             continue
@@ -336,7 +227,7 @@ def kit_from_text(text: str, *, where: str, read_table: Callable[[str], xr.DataA
                 do="Give one or two.",
             )
         tables[name] = relabel_ports(table, range(1, len(ports_of(table)) + 1))
-    standards = {name: MappingProxyType(dict(model)) for name, model in models.items()}
+    standards = {name: MappingProxyType(dict(model)) for name, model in described.items()}
     return Kit(
         head.name,
         head.description,
