@@ -84,8 +84,12 @@ class Plant(ast.NodeTransformer):
         self.generic_visit(node)
         if self.kind == "index" and isinstance(node.slice, ast.Tuple) and len(node.slice.elts) >= 2:
             *rest, a, b = node.slice.elts
-            if ast.dump(a) != ast.dump(b) and self._here(
-                node, f"{ast.unparse(node)} with its last indices swapped"
+            # A new axis may stand on either side of a number: that changes nothing.
+            numbered = not any(isinstance(e, ast.Constant) and e.value is None for e in (a, b))
+            if (
+                numbered
+                and ast.dump(a) != ast.dump(b)
+                and self._here(node, f"{ast.unparse(node)} with its last indices swapped")
             ):
                 node.slice.elts = [*rest, b, a]
         return node
@@ -99,9 +103,11 @@ class Plant(ast.NodeTransformer):
         if self.kind == "conjugate" and name in ("np.exp", "inverse", "np.angle", "np.unwrap"):
             if self._here(node, f"{ast.unparse(node)} of the conjugate"):
                 node.args[0] = ast.parse(f"np.conj({ast.unparse(node.args[0])})", mode="eval").body
-        if self.kind == "transpose" and name.endswith(("swapaxes", "transpose")) and len(node.args) >= 2:
+        method = isinstance(node.func, ast.Attribute) and node.func.attr in ("swapaxes", "transpose")
+        if self.kind == "transpose" and method and len(node.args) >= 2 and not name.startswith("np."):
             if self._here(node, f"{ast.unparse(node)} left out"):
-                return node.func.value if name.endswith(".swapaxes") else node
+                return node.func.value
+        return node.func.value if name.endswith(".swapaxes") else node
         return node
 
     def visit_Attribute(self, node):
