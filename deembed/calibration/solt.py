@@ -13,10 +13,12 @@ from deembed.calibration.error_terms import build_terms
 from deembed.calibration.reading import Reading, sorted_readings, unsolved
 from deembed.calibration.sol import port_terms, signed_standards, stacked_terms
 from deembed.calibration.sweeps import Sweep, elements, laid_out, response
+from deembed.calibration.thrus import chain_findings, check_connected, known_pairs
 from deembed.errors import JobError, PortError, SolveError
 from deembed.findings import attach
 from deembed.numeric.error_terms import Terms
 from deembed.numeric.solt import thru_terms
+from deembed.numeric.thru_chain import complete_pairs, load_match_spread
 
 if TYPE_CHECKING:
     from deembed.standards import Kit
@@ -40,8 +42,9 @@ def solve_solt(
     Parameters
     ----------
     readings : sequence of Reading
-        Three or more reflections at each port that drives, a thru (any known two-port of kind thru, line or
-        table) for each pair, and with `isolation` a reading called ``isolation`` for each pair.
+        Three or more reflections at each port that drives, thrus (any known two-port of kind thru, line or
+        table) that connect all ports, and with `isolation` a reading called ``isolation`` for each pair. A pair
+        without a thru is followed through a third port, and a finding says so.
     kit : Kit
     ports : sequence of int
         Analyzer ports, two or more.
@@ -75,9 +78,13 @@ def solve_solt(
     driven = list(ports) if drive == "every-port" else [ports[0]]
     ordered = [(r, d) for d in driven for r in ports if r != d]
     wanted = sorted({(min(p), max(p)) for p in ordered})
-    _all_there(wanted, two, "thru")
     if isolation:
         _all_there(wanted, apart, "isolation")
+    if drive == "every-port":
+        check_connected(two, ports)
+        ordered = [(r, d) for r, d in ordered if (min(r, d), max(r, d)) in two]
+    wanted = sorted({(min(p), max(p)) for p in ordered})
+    _all_there(wanted, two, "thru")
     own, dims, coords, findings = port_terms(one, kit, driven)
     f = coords["frequency"]
     for pair in wanted:
@@ -85,9 +92,21 @@ def solve_solt(
     # Own terms and thrus may carry different leading dims: laid out together, they line up.
     sweeps = [Sweep(t, dims[:-1], coords) for d in driven for t in own[d]]
     sweeps += _two_port_sweeps(ordered, two, apart if isolation else {}, kit, f)
+    rest = [(r, d) for d in driven for r in ports if r != d and (r, d) not in ordered]
+    sweeps += [elements(apart[min(r, d), max(r, d)].raw, (d, r))[1][0] for r, d in rest if isolation]
     plain, dims, coords = laid_out(sweeps, f)
+    leaks = dict(zip(rest, plain[len(plain) - len(rest) :] if isolation else [0.0] * len(rest), strict=True))
+    plain = plain[: len(plain) - len(rest)] if isolation else plain
     own = {d: tuple(plain[3 * k : 3 * k + 3]) for k, d in enumerate(driven)}  # type: ignore[misc]
     terms = _transmission(own, plain[3 * len(driven) :], ordered, ports, f)
+    known = known_pairs(ordered, ports)
+    if drive == "every-port" and known.sum() < len(ports) * (len(ports) - 1):
+        for (r, d), leak in leaks.items():
+            terms.isolation[..., ports.index(r), ports.index(d)] = leak
+        terms = complete_pairs(terms, known)
+        findings += chain_findings(
+            f, load_match_spread(terms, known), known, ports, next(iter(two.values())).standard
+        )
     absent = "" if drive == "every-port" else "only the first port drives, so no relation is left over"
     data = build_terms(
         terms,

@@ -15,6 +15,7 @@ from deembed.calibration import Reading, correct, predict_raw, solve_solt
 from deembed.errors import GridError, JobError, KitError, PortError, SolveError
 from deembed.findings import findings_of
 from deembed.labels import relabel_ports, select_ports, sparams
+from deembed.simulate.analyzer import Imperfections, random_analyzer
 from deembed.standards import kit_from_text, load_kit
 from deembed.touchstone import read_touchstone
 
@@ -308,9 +309,67 @@ def test_a_missing_thru_is_named_by_its_ports(good, bench, rng):
     with pytest.raises(SolveError, match=whole(text)):
         solve_solt(without(good, "thru 1-2"), THRUS)
     three = bench.solt_readings(bench.random_terms(rng, F, (1, 2, 3)), THRUS, (1, 2, 3))
-    text = "calibration: no thru reading between ports 1 and 3 (and of 2-3). Read the thru with ports [1, 3]."
+    text = "calibration: no thru connects ports 1 and 2 with 3. Read the thru with ports [1, 3]."
     with pytest.raises(SolveError, match=whole(text)):
         solve_solt(without(three, "thru 1-3", "thru 2-3"), THRUS, ports=(1, 2, 3))
+
+
+@pytest.mark.parametrize(
+    "thrus", [((1, 2), (2, 3), (3, 4)), ((1, 2), (1, 3), (1, 4)), ((1, 2), (2, 3), (3, 4), (4, 1))]
+)
+def test_thrus_that_connect_all_ports_are_enough(thrus):
+    """Boxes and switch terms of a simulated analyzer: its load match does not depend on which port drives."""
+    analyzer = random_analyzer(
+        F, rng=np.random.default_rng(7), ports=4, imperfections=Imperfections(0, 0, 0, 0)
+    )
+    analyzer.leakage[:] = 0
+    kit, ports = load_kit("ideal"), (1, 2, 3, 4)
+    given = [
+        Reading(s, (p,), analyzer.read(relabel_ports(kit.response(s, F), [p])))
+        for p in ports
+        for s in ("open", "short", "load")
+    ]
+    given += [Reading("thru", t, analyzer.read(relabel_ports(kit.response("thru", F), t))) for t in thrus]
+    terms = solve_solt(given, kit, ports=ports)
+    part = sparams(0.3 * np.random.default_rng(1).normal(size=(F.size, 4, 4)), F)
+    assert float(np.abs(correct(terms, analyzer.read(part)) - part).max()) < 1e-9
+    (note,) = findings_of(terms)
+    missing = {(a, b) for a in ports for b in ports if a < b} - {(min(t), max(t)) for t in thrus}
+    assert note.kind == "thru-followed" and set(note.where.split(", ")) == {
+        f"thru {a}-{b}" for a, b in missing
+    }
+    assert "only if load match does not depend on which port drives" in note.text
+
+
+def test_a_load_match_that_depends_on_the_drive_makes_followed_pairs_doubtful(bench, rng):
+    terms = bench.random_terms(rng, F, (1, 2, 3))
+    readings = bench.solt_readings(terms, THRUS, (1, 2, 3))
+    found = findings_of(solve_solt(without(readings, "thru 1-3"), THRUS, ports=(1, 2, 3)))
+    assert {f.where for f in found if f.kind == "load-match-depends"} == {"port 2"}
+    assert all("read their thrus" in f.text for f in found if f.kind == "load-match-depends")
+
+
+def test_leakage_of_a_pair_without_a_thru_is_still_taken_off():
+    analyzer = random_analyzer(
+        F, rng=np.random.default_rng(8), ports=3, imperfections=Imperfections(0, 0, 0, 0)
+    )
+    kit, ports = load_kit("ideal"), (1, 2, 3)
+    given = [
+        Reading(s, (p,), analyzer.read(relabel_ports(kit.response(s, F), [p])))
+        for p in ports
+        for s in ("open", "short", "load")
+    ]
+    given += [
+        Reading("thru", t, analyzer.read(relabel_ports(kit.response("thru", F), t))) for t in ((1, 2), (2, 3))
+    ]
+    nothing = sparams(np.zeros((F.size, 2, 2)), F)
+    given += [
+        Reading("isolation", t, analyzer.read(relabel_ports(nothing, t))) for t in ((1, 2), (2, 3), (1, 3))
+    ]
+    terms = solve_solt(given, kit, ports=ports, isolation=True)
+    np.testing.assert_allclose(
+        terms.isolation.sel(port_out=3, port_in=1), analyzer.leakage[:, 2, 0], atol=1e-12
+    )
 
 
 def test_isolation_asked_for_and_not_read(good):
