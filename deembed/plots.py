@@ -8,9 +8,12 @@ from __future__ import annotations
 
 import io
 import re
+import threading
+from collections.abc import Iterator
+from contextlib import contextmanager
 from typing import Any
 
-from matplotlib import rc_context
+from matplotlib import rcParams
 from matplotlib.artist import Artist
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
@@ -140,6 +143,25 @@ def _frame(picture: Picture, width: float, height: float) -> tuple[float, float,
     return left / width, bottom / height, wide / width, tall / height
 
 
+_ONE_WRITER = threading.Lock()
+
+
+@contextmanager
+def _settings(wanted: dict[str, Any]) -> Iterator[None]:
+    """Settings of matplotlib for one drawing; only these are put back.
+
+    They belong to the whole process: while two threads draw, each would put back what the other one set.
+    """
+    with _ONE_WRITER:
+        settings: Any = rcParams
+        before = {key: settings[key] for key in wanted}
+        settings.update(wanted)
+        try:
+            yield
+        finally:
+            settings.update(before)
+
+
 _ESCAPES = {"&": "&amp;", "<": "&lt;", ">": "&gt;", '"': "&quot;"}
 
 
@@ -177,7 +199,7 @@ def svg(
     )
     sink = io.StringIO()
     quiet: Any = dict.fromkeys(("Date", "Creator", "Format", "Type"))
-    with rc_context({"svg.hashsalt": picture.name, "svg.fonttype": "none", "path.simplify": True}):
+    with _settings({"svg.hashsalt": picture.name, "svg.fonttype": "none", "path.simplify": True}):
         fig.savefig(sink, format="svg", metadata=quiet)
     return _inline(sink.getvalue(), picture, width=width, height=height)
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import textwrap
+from collections.abc import Iterable
 from dataclasses import dataclass
 
 from deembed.views.lane_map import Lane, LaneMap
@@ -141,12 +142,16 @@ def caption(lane: Lane, room: float) -> list[str]:
             noted.setdefault((SHAPES[s.state], s.state_words), {})[name] = None
     told = []
     for (shape, said), names in noted.items():
-        if len(names) == 1:
-            told.append(f"{shape} {next(iter(names))}: {said}")
-        else:
-            told.append(f"{shape} {said} each: {', '.join(names)}")
-    # Lines break between names, never inside one.
-    kept = [t.replace(" ", "\N{NO-BREAK SPACE}") for t in told]
-    text = "; ".join(t.replace(f",\N{NO-BREAK SPACE}", ", ") for t in kept)
-    lines = textwrap.wrap(text, max(int((room - LEFT) / 7.6), 24))
+        one = f"{shape} {next(iter(names))}: {said}"
+        told.append(_unbroken(one) if len(names) == 1 else _unbroken(f"{shape} {said} each: ") + _row(names))
+    lines = textwrap.wrap("; ".join(told), max(int((room - LEFT) / 7.6), 24))
     return [line.replace("\N{NO-BREAK SPACE}", " ") for line in lines]
+
+
+def _row(names: Iterable[str]) -> str:
+    return ", ".join(map(_unbroken, names))
+
+
+def _unbroken(text: str) -> str:
+    """Lines break between names, never inside one."""
+    return text.replace(" ", "\N{NO-BREAK SPACE}")

@@ -4,7 +4,9 @@ import re
 import subprocess
 import sys
 import xml.etree.ElementTree as ET
+from concurrent.futures import ThreadPoolExecutor
 
+import matplotlib
 import numpy as np
 import pytest
 from matplotlib.backends.backend_agg import FigureCanvasAgg
@@ -265,6 +267,17 @@ def test_pictures_bring_their_own_sheet_so_that_any_page_will_do(inventory):
     for theme in THEMES:
         assert figure(inventory["part.gain"], theme=theme).patch.get_facecolor()[3] == 1.0
     assert THEMES["dark"].hues == THEMES["light"].hues
+
+
+def test_drawings_made_at_the_same_time_are_the_same_as_one_by_one(inventory):
+    names = ["part.gain", "part.chart", "part.phase", "terms.port-1"] * 4
+    alone = {n: svg(inventory[n]) for n in set(names)}
+    before = dict(matplotlib.rcParams)
+    with ThreadPoolExecutor(4) as pool:
+        together = list(pool.map(lambda n: svg(inventory[n]), names))
+    assert all("<text" in t for t in together)
+    assert together == [alone[n] for n in names]
+    assert dict(matplotlib.rcParams) == before
 
 
 def test_pyplot_is_never_loaded():
