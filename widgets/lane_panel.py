@@ -2,18 +2,24 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import ipywidgets as w
 import traitlets as t
 
 from deembed.plots import lane_map_svg
 from deembed.plots_lanes_layout import layout_of
 from deembed.views.lane_map import LaneMap, Segment
+from deembed.widgets.turns import in_turn
 
 __all__ = ["LanePanel"]
 
 WIDTH = 960
+# Below this the words of the map could not be read: it scrolls instead.
+NARROW = 760
 # A plane is drawn thinner than a fingertip or a shaky mouse can hit.
 LEAST = 16
+_ONE = "1 / 1 / 2 / 2"
 
 
 class LanePanel(w.GridBox):
@@ -22,54 +28,68 @@ class LanePanel(w.GridBox):
     Parameters
     ----------
     lane_map : LaneMap
+    turns : Turns
+        Shared with the panels that follow `selected`.
     theme : str
         ``light`` or ``dark``.
     """
 
     selected = t.Unicode("part").tag(sync=False)
 
-    def __init__(self, lane_map: LaneMap, *, theme: str = "light") -> None:
-        self._map, self._theme = lane_map, theme
+    def __init__(self, lane_map: LaneMap, *, turns: Any, theme: str = "light") -> None:
+        self._map, self._turns, self._theme = lane_map, turns, theme
         place = layout_of(lane_map, width=WIDTH)
-        self.picture = w.HTML(layout=_cell(0, 0, WIDTH, place.height))
+        self.picture = w.HTML(layout=w.Layout(grid_area=_ONE, width="100%", margin="0"))
         self.picture.add_class("deembed-map")
         self.buttons = {
-            s.id: self._button(s, place.boxes[s.id]) for s in lane_map.segments if s.id in place.boxes
+            s.id: self._button(s, place.boxes[s.id], place.height)
+            for s in lane_map.segments
+            if s.id in place.boxes
         }
         super().__init__(
             [self.picture, *self.buttons.values()],
             layout=w.Layout(
-                grid_template_columns=f"{WIDTH}px",
-                grid_template_rows=f"{place.height:.0f}px",
+                grid_template_columns=f"minmax({NARROW}px, {WIDTH}px)",
                 justify_items="flex-start",
                 align_items="flex-start",
                 overflow="auto hidden",
-                width="auto",
-                max_width=f"{WIDTH + 8}px",
+                width="100%",
             ),
         )
-        self._draw()
-        self.observe(lambda _: self._draw(), "selected")
+        self._draw(None, self.selected)
+        self.observe(lambda change: self._draw(change["old"], change["new"]), "selected")
 
-    def _button(self, segment: Segment, box: tuple[float, float, float, float]) -> w.Button:
+    def _button(self, segment: Segment, box: tuple[float, float, float, float], tall: float) -> w.Button:
         x, y, width, height = box
         wider = max(LEAST - width, 0)
-        layout = _cell(x - wider / 2, y, width + wider, height)
-        button = w.Button(tooltip=f"{segment.title}: {segment.state_words}", layout=layout)
+        layout = _over(x - wider / 2, y, width + wider, height, tall=tall)
+        button = w.Button(tooltip=_name(segment, chosen=False), layout=layout)
         button.add_class("deembed-segment")
-        button.on_click(lambda _, name=segment.id: self.set_trait("selected", name))
+        if wider:
+            button.add_class("deembed-thin")
+        button.on_click(in_turn(self._turns, lambda _: self.set_trait("selected", segment.id)))
         return button
 
-    def _draw(self) -> None:
-        self.picture.value = lane_map_svg(self._map, selected=self.selected, width=WIDTH, theme=self._theme)
+    def _draw(self, old: str | None, new: str) -> None:
+        for name in filter(None, (old, new)):
+            self.buttons[name].tooltip = _name(self._map.segment(name), chosen=name == new)
+        self.picture.value = lane_map_svg(self._map, selected=new, width=WIDTH, theme=self._theme)
 
 
-def _cell(x: float, y: float, width: float, height: float) -> w.Layout:
-    """Everything shares one grid cell; margins put each thing where the drawing has it."""
+def _name(segment: Segment, *, chosen: bool) -> str:
+    """Accessible name of a segment's button: what it is, how it stands, whether it is the chosen one."""
+    return f"{segment.title}: {segment.state_words}{', chosen' if chosen else ''}"
+
+
+def _over(x: float, y: float, width: float, height: float, *, tall: float) -> w.Layout:
+    """Everything shares one grid cell; shares of it put each button where the drawing has its segment.
+
+    Margins, also the upper one, are shares of the cell's width.
+    """
     return w.Layout(
-        grid_area="1 / 1 / 2 / 2",
-        margin=f"{y:.1f}px 0 0 {x:.1f}px",
-        width=f"{width:.1f}px",
-        height=f"{height:.1f}px",
+        grid_area=_ONE,
+        margin=f"{100 * y / WIDTH:.3f}% 0 0 {100 * x / WIDTH:.3f}%",
+        width=f"{100 * width / WIDTH:.3f}%",
+        height=f"{100 * height / tall:.3f}%",
         min_width="0",
     )

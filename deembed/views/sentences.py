@@ -25,6 +25,7 @@ __all__ = [
     "finding_line",
     "finding_lines",
     "input_lines",
+    "plain_text",
     "tally",
     "unwitnessed",
     "version_rows",
@@ -194,6 +195,25 @@ def unwitnessed(outcome: Any) -> tuple[str, ...]:
     if missing:
         out.append(f"Not judged, because [expect] does not say: {words.listed(missing)}.")
     return tuple(out)
+
+
+def plain_text(outcome: Any) -> str:
+    """Verdict, findings and blind spots as plain text, for places that show neither pictures nor pages.
+
+    Parameters
+    ----------
+    outcome : Outcome
+        See `deembed.job`.
+
+    Returns
+    -------
+    str
+    """
+    lines = [outcome.verdict, f"Findings: {tally(outcome.findings)}"]
+    lines += [f"{f.shape} {f.severity}, {f.place}: {f.text}" for f in finding_lines(outcome.findings)]
+    lines.append("What these readings could not have shown:")
+    lines += [f"{text} To see it: {reading}." for text, _, _, reading in blind_lines(outcome)]
+    return "\n".join([*lines, *unwitnessed(outcome)])
 
 
 def facts_rows(outcome: Any) -> tuple[tuple[str, str], ...]:

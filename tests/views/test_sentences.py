@@ -24,6 +24,16 @@ def test_a_finding_without_band_or_significance_says_so():
     assert one.band == "1 GHz"
 
 
+def test_plain_text_leaves_nothing_out(outcome):
+    spot = BlindSpot("arm reversed", "arm 2", 0.34, "read a short behind arm 2", "Arm 2 turned round.")
+    said = sentences.plain_text(outcome.changed(blind_spots=(spot,))).splitlines()
+    assert said[0] == outcome.verdict
+    assert said[1] == "Findings: 1 contradiction, 2 warnings and 2 notes"
+    assert said[2] == f"◆ contradiction, the part: {outcome.findings[0].text}"
+    assert len(said) > 2 + len(outcome.findings)
+    assert "Arm 2 turned round. To see it: read a short behind arm 2." in said
+
+
 def test_findings_are_counted_in_words(outcome):
     assert sentences.tally(outcome.findings) == "1 contradiction, 2 warnings and 2 notes"
     assert sentences.tally([]) == "no findings"
