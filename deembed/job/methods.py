@@ -153,18 +153,22 @@ class Method:
     check: Callable[[JobFile, Place], None] | None = None
     mistakes: tuple[Mistake, ...] = ()
     uses_switch_terms: bool = False
+    known_standards: bool = False
     uses_isolation: bool = False
 
 
 METHODS: Mapping[str, Method] = {
     "none": Method(None, kit=False, drives=_EVERY, mistakes=(_ELSEWHERE,)),
-    "sol": Method(_solve_sol, kit=True, drives=_BOTH, check=_check_sol, mistakes=(_EXCHANGED,)),
+    "sol": Method(
+        _solve_sol, kit=True, drives=_BOTH, check=_check_sol, mistakes=(_EXCHANGED,), known_standards=True
+    ),
     "solt": Method(
         _solve_solt,
         kit=True,
         drives=_BOTH,
         check=_check_pairs,
         mistakes=(_EXCHANGED, _THRU),
+        known_standards=True,
         uses_isolation=True,
     ),
     "trl": Method(

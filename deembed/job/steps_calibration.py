@@ -62,6 +62,7 @@ def terms(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
     method = method_named(spec.calibration.method)
     if method.solve is None:
         return None, _unused_switch_terms(spec)
+    from deembed.calibration.residuals import residual_findings
     from deembed.calibration.self_check import check_terms
 
     own_kit, own_readings = got["kit"], got["readings"]
@@ -74,7 +75,9 @@ def terms(spec: JobFile, inputs: Inputs, place: Place, got: Got) -> tuple[xr.Dat
         switch if method.uses_switch_terms else {},
     )
     solved = method.solve(own_readings, own_kit, setup)
-    found = [*findings_of(solved), *check_terms(solved), *notes, *_validity(own_kit, own_readings)]
+    found = [*findings_of(solved), *check_terms(solved), *notes]
+    if method.known_standards:
+        found += residual_findings(solved, own_readings, own_kit)
     if not method.uses_switch_terms:
         from deembed.calibration.witness import switch_term_findings
 
@@ -122,16 +125,6 @@ def _unused_switch_terms(spec: JobFile) -> tuple[Finding, ...]:
         f"applied: method {spec.calibration.method} does not use them, but compares them with what its terms imply."
     )
     return (Finding(finding_id("switch-terms-unused", where), "switch-terms-unused", where, "note", text),)
-
-
-def _validity(kit: Any, own_readings: Any) -> list[Finding]:
-    found = []
-    for reading in own_readings:
-        if reading.standard == ISOLATION:
-            continue
-        where = f"{reading.standard} {'-'.join(str(p) for p in reading.ports)}"
-        found += kit.validity_findings(reading.standard, reading.raw.frequency.values, where=where)
-    return found
 
 
 def terms_on_grid(
