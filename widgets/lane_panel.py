@@ -63,7 +63,8 @@ class LanePanel(w.GridBox):
         x, y, width, height = box
         wider = max(LEAST - width, 0)
         layout = _over(x - wider / 2, y, width + wider, height, tall=tall)
-        button = w.Button(tooltip=_name(segment, chosen=False), layout=layout)
+        button = w.Button(layout=layout)
+        _say(button, segment, chosen=False)
         button.add_class("deembed-segment")
         if wider:
             button.add_class("deembed-thin")
@@ -72,13 +73,17 @@ class LanePanel(w.GridBox):
 
     def _draw(self, old: str | None, new: str) -> None:
         for name in filter(None, (old, new)):
-            self.buttons[name].tooltip = _name(self._map.segment(name), chosen=name == new)
+            _say(self.buttons[name], self._map.segment(name), chosen=name == new)
         self.picture.value = lane_map_svg(self._map, selected=new, width=WIDTH, theme=self._theme)
 
 
-def _name(segment: Segment, *, chosen: bool) -> str:
-    """Accessible name of a segment's button: what it is, how it stands, whether it is the chosen one."""
-    return f"{segment.title}: {segment.state_words}{', chosen' if chosen else ''}"
+def _say(button: w.Button, segment: Segment, *, chosen: bool) -> None:
+    """What the segment is, how it stands, whether it is the chosen one; as text (hidden) and on hovering.
+
+    Not every assistive tool takes a title alone for the name of a button.
+    """
+    button.description = f"{segment.title}: {segment.state_words}{', chosen' if chosen else ''}"
+    button.tooltip = button.description
 
 
 def _over(x: float, y: float, width: float, height: float, *, tall: float) -> w.Layout:

@@ -28,10 +28,11 @@ def css(theme: str) -> str:
   padding-left: 10px; }}
 .deembed-lanes h4 {{ margin: 6px 0 2px 0; font-size: 15px; }}
 .deembed-lanes button.deembed-segment {{ background: transparent; border: 0; box-shadow: none;
-  padding: 0; min-width: 0; }}
+  padding: 0; min-width: 0; overflow: hidden; text-overflow: clip; white-space: nowrap; text-indent: 200%; }}
 .deembed-lanes button.deembed-thin {{ z-index: 1; }}
 .deembed-lanes button.deembed-segment:hover {{ outline: 2px dashed {ink}; }}
-.deembed-lanes button:focus-visible {{ outline: 3px solid {ink}; outline-offset: 2px; }}
+.deembed-lanes button.jupyter-button:enabled:focus {{ outline: none; box-shadow: none; }}
+.deembed-lanes button.jupyter-button:enabled:focus-visible {{ outline: 3px solid {ink}; outline-offset: 2px; }}
 .deembed-lanes button.deembed-show {{ background: none; color: {ink}; border: 0; box-shadow: none; padding: 0;
   font-size: 15px; text-align: left; text-decoration: underline; text-underline-offset: 3px; }}
 .deembed-lanes button.deembed-show:hover {{ text-decoration-thickness: 2px; }}

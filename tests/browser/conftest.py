@@ -156,6 +156,14 @@ def look(page, name):
     page.screenshot(path=PICTURES / f"{re.sub(r'[^A-Za-z0-9]+', '-', name).strip('-')}.png")
 
 
+def use_theme(page, name):
+    """Light or Dark; Lab keeps the choice for every page that follows."""
+    page.evaluate(
+        f"() => window.jupyterapp.commands.execute('apputils:change-theme', {{theme: 'JupyterLab {name}'}})"
+    )
+    page.wait_for_function(f"() => document.body.dataset.jpThemeLight === '{str(name == 'Light').lower()}'")
+
+
 def write_notebook(path, *cells):
     """A notebook of code cells, as plain JSON."""
     made = [

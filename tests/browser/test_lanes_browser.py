@@ -42,81 +42,138 @@ def show(page, lab, jobs, name, source, theme="light"):
     return expect
 
 
-def test_a_walk_by_mouse_and_by_key(page, lab, jobs):
+def centre(page, segment):
+    """Where the drawing has the middle of a segment, on the screen."""
+    drawn = page.locator(f'.deembed-map g[data-segment="{segment}"]')
+    drawn.scroll_into_view_if_needed()
+    box = drawn.bounding_box()
+    return box["x"] + box["width"] / 2, box["y"] + box["height"] / 2
+
+
+def test_a_walk_by_mouse(page, lab, jobs):
     expect = show(page, lab, jobs, "walk", "bad/job.toml")
     expect(status(page)).to_have_attribute("data-state", "ready")
     expect(page.locator(".deembed-verdict")).to_contain_text("Not believable as a passive part")
-    expect(page.locator(".deembed-map svg")).to_have_attribute(
-        "aria-label", re.compile("lane", re.IGNORECASE)
-    )
+    expect(page.get_by_role("img", name=re.compile("^Lane map, 3 lanes meeting at the part"))).to_be_visible()
     help_.look(page, "lanes-first")
 
-    # By mouse: the arm of part port 2, where the drawing has it.
-    arm = page.locator('.deembed-map g[data-segment="lane-2/arm"]').bounding_box()
-    page.mouse.click(arm["x"] + arm["width"] / 3, arm["y"] + arm["height"] / 2)
+    page.mouse.click(*centre(page, "lane-2/arm"))
     expect(status(page)).to_have_attribute("data-segment", "lane-2/arm")
     expect(status(page)).to_have_attribute("data-picture", "arm.2")
     expect(page.locator('.deembed-map g[data-segment="lane-2/arm"]')).to_have_attribute("data-chosen", "yes")
-    expect(page.locator(".deembed-holding h4")).to_contain_text("2")
-    expect(page.locator(".deembed-picture svg")).to_have_attribute("aria-label", re.compile(r"\d"))
+    expect(page.get_by_role("button", name="Arm 2: nothing noted, chosen", exact=True)).to_have_count(1)
+    expect(page.locator(".deembed-holding")).to_contain_text("142.")
+    expect(page.get_by_role("img", name=re.compile(r"^Arm 2 .*dB"))).to_be_visible()
     help_.look(page, "lanes-arm")
 
-    # By key: Tab to the next segment, Enter chooses it.
-    chosen = page.locator("button.deembed-segment:focus")
-    page.keyboard.press("Tab")
-    name = chosen.get_attribute("title")
-    page.keyboard.press("Enter")
-    expect(status(page)).not_to_have_attribute("data-segment", "lane-2/arm")
-    expect(page.locator(".deembed-holding h4")).to_have_text(name.split(":")[0])
-
-    # A finding takes the pictures to its band, and Whole sweep brings them back.
-    button = page.locator(".deembed-findings button").first
-    button.scroll_into_view_if_needed()
-    button.click()
+    # Every finding takes the pictures to its band, in sight of the one who asked; the way back is in words.
+    links = page.locator(".deembed-findings button")
+    assert links.count() >= 4
+    for k in range(links.count()):
+        links.nth(k).scroll_into_view_if_needed()
+        links.nth(k).click()
+        expect(links.nth(k)).to_contain_text("Shown: ")
+        expect(page.locator(".deembed-picture svg")).to_be_in_viewport(ratio=0.6)
+    links.first.click()
     expect(status(page)).to_have_attribute("data-picture", "part.gain")
     expect(status(page)).to_have_attribute("data-band", re.compile(r"^\d+-\d+$"))
     before = page.locator(".deembed-picture").inner_html()
     help_.look(page, "lanes-finding")
-    page.get_by_role("button", name="Whole sweep").click()
+    page.get_by_role("button", name="Back to the whole sweep").click()
     expect(status(page)).to_have_attribute("data-band", "whole")
+    expect(links.first).to_contain_text("Show ")
+    expect(page.get_by_role("button", name="Back to the whole sweep")).to_have_count(0)
     assert page.locator(".deembed-picture").inner_html() != before
 
-    # Every picture of the part draws, and says something with a number in it.
-    options = page.locator(".deembed-choice select option").all_inner_texts()
+
+def test_every_picture_of_the_part_draws(page, lab, jobs):
+    expect = show(page, lab, jobs, "pictures", "bad/job.toml")
+    expect(status(page)).to_have_attribute("data-state", "ready")
+    choice = page.get_by_role("combobox", name="Picture")
+    options = choice.locator("option").all_inner_texts()
     assert len(options) >= 8
+    seen = set()
     for option in options:
-        page.locator(".deembed-choice select").select_option(label=option)
+        before = status(page).get_attribute("data-picture")
+        choice.select_option(label=option)
+        if option != options[0]:
+            expect(status(page)).not_to_have_attribute("data-picture", before)
         expect(page.locator(".deembed-picture svg")).to_have_attribute("aria-label", re.compile(r"\d"))
-    page.locator(".deembed-choice select").select_option(label=next(o for o in options if "chart" in o))
-    expect(status(page)).to_have_attribute("data-picture", "part.chart")
+        # Words are words, not outlines, also when clicks come faster than pictures.
+        assert page.locator(".deembed-picture svg text").count() >= 5
+        seen.add(page.locator(".deembed-picture").inner_html())
+    assert len(seen) == len(options)
+    for _ in range(4):
+        page.locator(".deembed-findings button").first.click()
+        choice.select_option(label=options[0])
+        choice.select_option(label=next(o for o in options if "chart" in o))
+        expect(status(page)).to_have_attribute("data-picture", "part.chart")
+        expect(page.get_by_role("img", name=re.compile("^Reflection chart"))).to_be_visible()
+        assert page.locator(".deembed-picture svg text").count() >= 5
     help_.look(page, "lanes-chart")
 
 
-def test_every_segment_has_a_button_where_it_is_drawn(page, lab, jobs):
-    expect = show(page, lab, jobs, "places", "good/job.toml")
+def test_a_walk_by_key_alone(page, lab, jobs):
+    expect = show(page, lab, jobs, "keys", "bad/job.toml")
     expect(status(page)).to_have_attribute("data-state", "ready")
-    drawn = page.locator(".deembed-map g.segment").evaluate_all(
-        "all => all.map(g => { const b = g.getBoundingClientRect(); return [b.x + b.width / 2, b.y + b.height / 2]; })"
-    )
-    buttons = page.locator("button.deembed-segment").evaluate_all(
-        "all => all.map(e => { const b = e.getBoundingClientRect();"
-        " return [b.x, b.y, b.x + b.width, b.y + b.height]; })"
-    )
-    assert len(drawn) == len(buttons) > 12
-    for x, y in drawn:
-        assert any(x0 <= x <= x1 and y0 <= y <= y1 for x0, y0, x1, y1 in buttons)
-    names = page.locator("button.deembed-segment").evaluate_all("all => all.map(e => e.title)")
-    assert all(re.match(r".+: .+", n) for n in names)
+    buttons = page.locator("button.deembed-segment")
+    order = page.locator(".deembed-map g.segment").evaluate_all("all => all.map(g => g.dataset.segment)")
+    assert buttons.count() == len(order)
+    buttons.first.focus()
+    for k, key in enumerate(("Enter", "Space", "Enter", "Space", "Enter", "Space")):
+        name = buttons.nth(k).get_attribute("title").removesuffix(", chosen")
+        page.keyboard.press(key)
+        expect(status(page)).to_have_attribute("data-segment", order[k])
+        expect(page.locator(".deembed-holding h4")).to_have_text(name.split(": ")[0])
+        # Choosing draws the map again; the focus must not be lost by it.
+        expect(buttons.nth(k)).to_be_focused()
+        page.keyboard.press("Tab")
+        ring = buttons.nth(k + 1).evaluate("e => getComputedStyle(e).outline")
+        assert "solid" in ring and "3px" in ring
+    help_.look(page, "lanes-key")
+
+    buttons.last.focus()
+    page.keyboard.press("Enter")
+    expect(status(page)).to_have_attribute("data-segment", "part")
+    page.keyboard.press("Tab")
+    expect(page.get_by_role("combobox", name="Picture")).to_be_focused()
+    for key in ("Space", "ArrowDown", "Enter"):  # a closed list would leave the arrow to Lab
+        page.keyboard.press(key)
+    expect(status(page)).to_have_attribute("data-picture", "part.reflection")
+    page.keyboard.press("Tab")
+    link = page.locator(".deembed-findings button").first
+    expect(link).to_be_focused()
+    page.keyboard.press("Space")
+    expect(status(page)).to_have_attribute("data-band", re.compile(r"^\d+-\d+$"))
+    expect(link).to_be_focused()
+    page.keyboard.press("Shift+Tab")
+    expect(page.get_by_role("button", name="Back to the whole sweep")).to_be_focused()
+    page.keyboard.press("Enter")
+    expect(status(page)).to_have_attribute("data-band", "whole")
+
+
+@pytest.mark.parametrize("width", [960, 1280, 1920])
+def test_every_segment_is_chosen_where_it_is_drawn(page, lab, jobs, width):
+    page.set_viewport_size({"width": width, "height": 1000})
+    expect = show(page, lab, jobs, f"places-{width}", "good/job.toml")
+    expect(status(page)).to_have_attribute("data-state", "ready")
+    segments = page.locator(".deembed-map g.segment").evaluate_all("all => all.map(g => g.dataset.segment)")
+    assert len(segments) == len(set(segments)) > 12
+    for segment in segments:
+        page.mouse.click(*centre(page, segment))
+        expect(status(page)).to_have_attribute("data-segment", segment)
+    inside = page.locator(".deembed-lanes").bounding_box()
+    drawn = page.locator(".deembed-map svg").bounding_box()
+    assert drawn["x"] + drawn["width"] <= inside["x"] + inside["width"]
+    help_.look(page, f"lanes-{width}")
 
 
 def test_a_dark_lab_can_be_read(page, lab, jobs):
     expect = show(page, lab, jobs, "dark", "bad/job.toml", theme="dark")
-    page.evaluate(
-        "() => window.jupyterapp.commands.execute('apputils:change-theme', {theme: 'JupyterLab Dark'})"
-    )
+    help_.use_theme(page, "Dark")
     expect(status(page)).to_have_attribute("data-state", "ready")
-    page.wait_for_timeout(500)
     help_.look(page, "lanes-dark")
+    help_.use_theme(page, "Light")
     ink, paper = (
         page.locator(".deembed-lanes").evaluate(f"e => getComputedStyle(e).{what}")
         for what in ("color", "backgroundColor")

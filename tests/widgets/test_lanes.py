@@ -58,7 +58,8 @@ def test_every_segment_has_a_button_that_says_its_state(lanes):
     for segment in lanes._map.segments:
         chosen = ", chosen" if segment.id == "part" else ""
         button = lanes.lanes.buttons[segment.id]
-        assert button.tooltip == f"{segment.title}: {segment.state_words}{chosen}"
+        assert button.description == f"{segment.title}: {segment.state_words}{chosen}"
+        assert button.tooltip == button.description
         assert "deembed-segment" in button._dom_classes
 
 
@@ -87,8 +88,8 @@ def test_choosing_a_segment_shows_what_it_holds_and_its_picture(lanes):
     assert 'data-segment="lane-2/arm" data-state="plain" data-chosen="yes"' in lanes.lanes.picture.value
     assert lanes.pictures.choice.value == "arm.2"
     assert "arm.2.delay" in [name for _, name in lanes.pictures.choice.options]
-    assert lanes.lanes.buttons["lane-2/arm"].tooltip.endswith(", chosen")
-    assert not lanes.lanes.buttons["part"].tooltip.endswith(", chosen")
+    assert lanes.lanes.buttons["lane-2/arm"].description.endswith(", chosen")
+    assert not lanes.lanes.buttons["part"].description.endswith(", chosen")
 
 
 def test_every_segment_can_be_chosen_and_leads_back_to_the_part(lanes):
