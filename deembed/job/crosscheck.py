@@ -30,6 +30,24 @@ def crosscheck(spec: JobFile, place: Place) -> None:
     coverage(spec, place)
     _terminations(spec, place)
     _fixture(spec, place)
+    _checks(spec, place)
+
+
+def _checks(spec: JobFile, place: Place) -> None:
+    for i, one in enumerate(spec.checks):
+        known_ports(one.analyzer_ports, spec.analyzer.ports, ("checks", i, "analyzer_ports"), place)
+        if spec.analyzer.drive == "first-port-only" and one.analyzer_ports != (1,):
+            raise place.error(
+                ("checks", i, "analyzer_ports"),
+                f"ports {list(one.analyzer_ports)} cannot be checked where only port 1 drives",
+                "Check with a one-port part on port 1.",
+            )
+        if one.uncertainty == one.reference_uncertainty == 0:
+            raise place.error(
+                ("checks", i, "uncertainty"),
+                "both uncertainties are zero",
+                "State a standard uncertainty, as wave amplitude, of the reading or of the known values.",
+            )
 
 
 def _analyzer(spec: JobFile, place: Place) -> None:

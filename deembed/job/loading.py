@@ -51,9 +51,18 @@ def fixture_files(spec: JobFile) -> list[Named]:
     return arms if coupled is None else [*arms, ("fixture.coupled.file", coupled.file)]
 
 
+def check_files(spec: JobFile) -> list[Named]:
+    """Readings of check standards and their known values."""
+    return [
+        (f"checks[{i}].{what}", getattr(one, what))
+        for i, one in enumerate(spec.checks)
+        for what in ("file", "reference")
+    ]
+
+
 def touchstone_files(spec: JobFile) -> list[Named]:
     """Every Touchstone file a job names, rounds first."""
-    groups = (round_files, reading_files, switch_files, termination_files, fixture_files)
+    groups = (round_files, reading_files, switch_files, termination_files, fixture_files, check_files)
     return [named for group in groups for named in group(spec)]
 
 

@@ -150,6 +150,17 @@ class RoundTable(_Table):
         return tuple(part for _, part in sorted(zip(on, self.part_ports, strict=True)))
 
 
+class CheckTable(_Table):
+    """One ``[[checks]]``: a known part read after the calibration and not used in it."""
+
+    name: Text = ""
+    file: File
+    reference: File
+    analyzer_ports: Ports
+    uncertainty: Annotated[float, Field(ge=0, le=1)]
+    reference_uncertainty: Annotated[float, Field(ge=0, le=1)] = 0.0
+
+
 class ArmTable(_Table):
     """One ``[[fixture.arms]]``: what stands between the cable plane and a part port."""
 
@@ -195,6 +206,7 @@ class JobFile(_Table):
     calibration: CalibrationTable
     rounds: Annotated[tuple[RoundTable, ...], Field(min_length=1)]
     terminations: PortFiles = FrozenMap()
+    checks: tuple[CheckTable, ...] = ()
     fixture: FixtureTable = FixtureTable()
     expect: ExpectTable = ExpectTable()
 

@@ -14,7 +14,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from deembed.findings import Finding
-from deembed.job import loading, steps, steps_calibration
+from deembed.job import loading, steps, steps_calibration, steps_checks
 from deembed.job.cache import Cache
 from deembed.job.inputs import Inputs
 from deembed.job.places import Place
@@ -117,6 +117,14 @@ STAGES: tuple[Stage, ...] = (
         steps_calibration.terms_on_grid,
         ("terms", "grid"),
         lambda _: None,
+    ),
+    Stage(
+        "checks",
+        "judging the check standards",
+        steps_checks.checks,
+        ("terms on the grid",),
+        lambda spec: [spec.checks, spec.analyzer.drive],
+        lambda spec, _: loading.check_files(spec),
     ),
     Stage(
         "sweeps",

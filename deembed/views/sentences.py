@@ -272,6 +272,8 @@ _KEYS = (
     (r"terminations\.(\d+)$", lambda facts, k: f"termination of part port {k}"),
     (r"analyzer\.switch_terms\.(\d+)$", lambda facts, k: f"switch terms of port {k}"),
     (r"calibration\.(kit)$", lambda facts, k: "kit"),
+    (r"checks\[(\d+)\]\.file$", lambda facts, k: f"check standard {k + 1}"),
+    (r"checks\[(\d+)\]\.reference$", lambda facts, k: f"known values of check standard {k + 1}"),
     (r"fixture\.(coupled)\.file$", lambda facts, k: "coupled fixture"),
 )
 

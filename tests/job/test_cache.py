@@ -32,6 +32,7 @@ AFTER_ARMS = ["shell", "part", "assessment", "blind spots"]
                 "readings",
                 "terms",
                 "terms on the grid",
+                "checks",
                 "corrected",
                 "assembled",
                 "part",

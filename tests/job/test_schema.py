@@ -112,13 +112,13 @@ def test_seats_follow_the_analyzer_ports() -> None:
             "[expects]",
             "job.toml, line 40, expects: unknown key 'expects'. Did you mean expect? Known in a job file: "
             "job, "
-            "analyzer, calibration, rounds, terminations, fixture, expect",
+            "analyzer, calibration, rounds, terminations, checks, fixture, expect",
         ),
         (
             "[expect]",
             '[[adjustments]]\ncause = "arm-reversed"\n\n[expect]',
             "job.toml, line 40, adjustments: unknown key 'adjustments'. Known in a job file: job, analyzer, "
-            "calibration, rounds, terminations, fixture, expect",
+            "calibration, rounds, terminations, checks, fixture, expect",
         ),
         (
             "part_ports = 3",
