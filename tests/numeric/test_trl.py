@@ -140,3 +140,13 @@ def test_all_readings_count_where_they_disagree(rng):
                     np.abs(a - b).max() for a, b in zip(trl.eight_terms(moved, known), exact, strict=True)
                 )
                 assert change > 1e-6, (number, i, j)
+
+
+@pytest.mark.parametrize("size", [0.9, 1e-2, 3e-4, 2e-5])
+def test_a_faint_reflect_still_serves_and_only_nothing_is_nan(size, rng):
+    boxes, switch, line, _ = case(rng, (20,))
+    reflect = np.full(20, size, dtype=complex)
+    found = solved(boxes, switch, line, reflect)
+    np.testing.assert_allclose(found.reflect, reflect, atol=1e-9)
+    np.testing.assert_allclose(found.e00[:, 0], boxes[0][:, 0], atol=1e-6)
+    assert np.isnan(solved(boxes, switch, line, 0 * reflect, reflect_guess=np.ones(20)).e00).all()
