@@ -138,3 +138,15 @@ def test_cables_turn_the_phase_by_skin_effect_as_much_as_they_damp(rng):
         steps = np.stack([np.diff(f), np.diff(root)], -1) / [1e9, 1]
         turn = -np.linalg.lstsq(steps, np.diff(phase), rcond=None)[0][1]
         assert turn == pytest.approx(loss, rel=1e-6)
+
+
+def test_a_connection_loses_nothing_and_is_the_same_both_ways(rng):
+    """A gap or a misplaced pin stores energy, it burns none: the joint alone is lossless and reciprocal."""
+    analyzer = random_analyzer(F, rng=rng, imperfections=Imperfections(0.0, 0.0, 0.05, 0.0))
+    through = np.broadcast_to(np.array([[0.0, 1.0], [1.0, 0.0]], dtype=complex), (F.size, 2, 2))
+    joint = analyzer._connection(through)
+    np.testing.assert_allclose(
+        joint.conj().swapaxes(-1, -2) @ joint, np.broadcast_to(np.eye(2), joint.shape), atol=1e-12
+    )
+    np.testing.assert_allclose(joint[:, 0, 1], joint[:, 1, 0], atol=1e-15)
+    assert np.abs(joint[-1, 0, 0]) > 1e-3
