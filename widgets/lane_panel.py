@@ -66,7 +66,7 @@ class LanePanel(w.GridBox):
         button = w.Button(layout=layout)
         _say(button, segment, chosen=False)
         button.add_class("deembed-segment")
-        if wider:
+        if 0 < width < LEAST:  # above its neighbours; what has no length at all, such as a missing arm, below
             button.add_class("deembed-thin")
         button.on_click(in_turn(self._turns, lambda _: self.set_trait("selected", segment.id)))
         return button

@@ -168,6 +168,31 @@ def test_every_segment_is_chosen_where_it_is_drawn(page, lab, jobs, width):
     help_.look(page, f"lanes-{width}")
 
 
+def test_without_a_fixture_the_planes_can_still_be_chosen(page, lab, jobs):
+    from playwright.sync_api import expect
+
+    help_.write_notebook(
+        jobs / "bare.ipynb",
+        "from deembed import load_job\nfrom deembed.widgets import Lanes",
+        "Lanes(load_job('good/job.toml').changed({'fixture.arms': None}))",
+    )
+    help_.open_and_run(page, lab, "bare.ipynb")
+    expect(status(page)).to_have_attribute("data-state", "ready")
+    for segment in (
+        "lane-1/cable-plane",
+        "lane-3/cable-plane",
+        "lane-2/part-port",
+        "lane-2/round-1-2/error-box",
+    ):
+        page.mouse.click(*centre(page, segment))
+        expect(status(page)).to_have_attribute("data-segment", segment)
+    # Nothing is drawn of an arm that is not there; the keyboard still finds out why.
+    page.get_by_role("button", name=re.compile("^Arm 1: ")).focus()
+    page.keyboard.press("Enter")
+    expect(page.locator(".deembed-holding")).to_contain_text("none given")
+    help_.look(page, "lanes-bare")
+
+
 def test_a_dark_lab_can_be_read(page, lab, jobs):
     expect = show(page, lab, jobs, "dark", "bad/job.toml", theme="dark")
     help_.use_theme(page, "Dark")

@@ -75,7 +75,7 @@ def test_buttons_lie_where_the_drawing_has_their_segments(lanes):
         assert (left + wide / 2) * 9.6 == pytest.approx(x + width / 2, abs=0.02)
         assert wide * 9.6 >= max(width, 16) - 0.02
         assert tall > 0 and height > 0
-        assert ("deembed-thin" in button._dom_classes) == (width < 16)
+        assert ("deembed-thin" in button._dom_classes) == (0 < width < 16)
 
 
 def test_choosing_a_segment_shows_what_it_holds_and_its_picture(lanes):
@@ -141,6 +141,21 @@ def test_the_band_stays_when_another_picture_is_chosen(lanes, bad):
         assert (told(lanes)["picture"], told(lanes)["band"]) == (name, band)
     lanes.lanes.buttons["lane-1/arm"].click()
     assert (told(lanes)["picture"], told(lanes)["band"]) == ("arm.1", band)
+
+
+@pytest.mark.parametrize("missing", [{"shell": None}, {"terms": None, "shell": None, "disagreement": None}])
+def test_what_was_not_done_leaves_segments_that_say_so(fake, missing, caplog):
+    lanes = Lanes(fake.fake_outcome(101).changed(**missing))
+    for key, button in lanes.lanes.buttons.items():
+        button.click()
+        segment = lanes._map.segment(key)
+        assert told(lanes)["segment"] == key and segment.state_words in plain(lanes.holding.value)
+        assert told(lanes)["picture"] == (segment.picture_name or "part.reflection")
+        lanes.lanes.buttons["lane-1/part-port"].click()
+    arm = lanes.lanes.buttons["lane-1/arm"]
+    assert "deembed-thin" not in arm._dom_classes
+    assert "deembed-thin" in lanes.lanes.buttons["lane-1/cable-plane"]._dom_classes
+    assert caplog.records == []
 
 
 def test_one_finding_at_a_time_is_shown(lanes, bad):
