@@ -189,6 +189,7 @@ def test_without_a_fixture_the_planes_can_still_be_chosen(page, lab, jobs):
     # Nothing is drawn of an arm that is not there; the keyboard still finds out why.
     page.get_by_role("button", name=re.compile("^Arm 1: ")).focus()
     page.keyboard.press("Enter")
+    expect(status(page)).to_have_attribute("data-segment", "lane-1/arm")
     expect(page.locator(".deembed-holding")).to_contain_text("none given")
     help_.look(page, "lanes-bare")
 
