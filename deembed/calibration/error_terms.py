@@ -17,7 +17,7 @@ import xarray as xr
 from numpy.typing import NDArray
 
 from deembed.errors import PortError
-from deembed.labels import check, ports_of, same_grid, select_ports, sparams, with_z0
+from deembed.labels import check, ports_of, same_grid, select_ports, with_z0
 from deembed.numeric import error_terms as kernel
 from deembed.numeric.linalg import inverse
 
@@ -104,19 +104,21 @@ def plain_terms(
     PortError
         A port without terms.
     """
-    known = [int(p) for p in terms.port_in.values]
+    known = [int(p) for p in terms.variables["port_in"].values]
     stray = [p for p in ports if p not in known]
     if stray:
         raise PortError(
             f"port {stray[0]} is not calibrated; the error terms hold ports {known}", where="error terms"
         )
     index = [known.index(p) for p in ports]
-    own = [str(d) for d in terms.load_match.dims if d not in ("frequency", "port_out", "port_in")]
+    own = [
+        str(d) for d in terms.variables["load_match"].dims if d not in ("frequency", "port_out", "port_in")
+    ]
     lead = (*leading, *(d for d in own if d not in leading))
     everything = index == list(range(len(known)))
 
     def plain(name: str) -> NDArray:
-        variable = terms[name].variable
+        variable = terms.variables[name]
         if not everything:
             variable = variable.isel({d: index for d in ("port_out", "port_in") if d in variable.dims})
         return _fronted(variable, lead)
@@ -132,11 +134,18 @@ def _fronted(variable: xr.Variable, lead: Sequence[str]) -> NDArray:
     return variable.transpose(*lead, *rest).values
 
 
-def _like(values: NDArray, lead: Sequence[str], terms: xr.Dataset, s: xr.DataArray, ports: Sequence[int]):
-    out = sparams(values, s.frequency.values, ports=ports, leading=lead)
-    out = out.assign_coords({d: a.coords[d] for a in (s, terms) for d in lead if d in a.coords})
-    z0 = terms.z0.drop_vars([c for c in terms.z0.coords if c not in terms.z0.dims]).sel(port_out=list(ports))
-    return with_z0(out, z0)
+def _like(
+    values: NDArray, lead: Sequence[str], terms: xr.Dataset, s: xr.DataArray, ports: Sequence[int]
+) -> xr.DataArray:
+    """Label a result like the sweep it came from, in the terms' impedances; in one go, for it is on every path."""
+    z0 = terms.variables["z0"]
+    known = terms.variables["port_out"].values.tolist()
+    if tuple(known) != tuple(ports):
+        z0 = z0.isel(port_out=[known.index(p) for p in ports])
+    coords: dict = {d: a.variables[d] for a in (s.coords, terms) for d in lead if d in a}
+    coords |= {"frequency": s.coords["frequency"].variable, "z0": z0}
+    coords |= {"port_out": np.asarray(ports), "port_in": np.asarray(ports)}
+    return xr.DataArray(values, coords=coords, dims=(*lead, "frequency", "port_out", "port_in"))
 
 
 def correct(terms: xr.Dataset, raw: xr.DataArray, *, turned: xr.DataArray | None = None) -> xr.DataArray:

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from deembed.numeric.linalg import inverse
+from deembed.numeric.linalg import NO_DIGITS, inverse
 
 __all__ = ["Terms", "correct", "from_boxes", "implied_switch_terms", "part_waves", "predict", "redundancy"]
 
@@ -79,7 +79,22 @@ def correct(terms: Terms, raw: NDArray) -> NDArray:
         NaN where a term is NaN or the waves do not determine S.
     """
     a, b = part_waves(terms, raw)
-    return b @ inverse(a)
+    return _two_ports(a, b) if raw.shape[-1] == 2 else b @ inverse(a)
+
+
+def _two_ports(a: NDArray, b: NDArray) -> NDArray:
+    """``B A^-1`` written out: a third of the time of inverse and product."""
+    a11, a12, a21, a22 = a[..., 0, 0], a[..., 0, 1], a[..., 1, 0], a[..., 1, 1]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        determinant = a11 * a22 - a12 * a21
+        size = np.hypot(np.abs(a11), np.abs(a12)) * np.hypot(np.abs(a21), np.abs(a22))
+        below = 1.0 / np.where(np.abs(determinant) > NO_DIGITS * size, determinant, np.nan)
+        s = np.empty_like(b)
+        for port in range(2):
+            b1, b2 = b[..., port, 0], b[..., port, 1]
+            s[..., port, 0] = (b1 * a22 - b2 * a21) * below
+            s[..., port, 1] = (b2 * a11 - b1 * a12) * below
+    return s
 
 
 def predict(terms: Terms, s: NDArray) -> NDArray:

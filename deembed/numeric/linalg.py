@@ -9,10 +9,10 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["diagonal_matrix", "inverse", "solve"]
+__all__ = ["NO_DIGITS", "diagonal_matrix", "inverse", "solve"]
 
 # A determinant below this share of Hadamard's bound has no correct digit left in double precision.
-_NO_DIGITS = 1e-15
+NO_DIGITS = 1e-15
 
 
 def diagonal_matrix(values: NDArray) -> NDArray:
@@ -74,7 +74,7 @@ def inverse(a: NDArray) -> NDArray:
     with np.errstate(all="ignore"):
         adjugate, determinant = _adjugate(a)
         bound = np.sqrt((np.abs(a) ** 2).sum(axis=-1)).prod(axis=-1)
-        good = np.abs(determinant) > _NO_DIGITS * bound
+        good = np.abs(determinant) > NO_DIGITS * bound
         reciprocal = np.where(good, 1.0 / np.where(good, determinant, 1.0), np.nan)
         return adjugate * reciprocal[..., None, None]
 
@@ -84,7 +84,7 @@ def _inverse_lapack(a: NDArray) -> NDArray:
         finite = np.isfinite(a).all(axis=(-2, -1))
         safe = np.where(finite[..., None, None], a, np.eye(a.shape[-1]))
         rows = np.sqrt((np.abs(safe) ** 2).sum(axis=-1)).prod(axis=-1)
-        good = finite & (np.abs(np.linalg.det(safe)) > _NO_DIGITS * rows)
+        good = finite & (np.abs(np.linalg.det(safe)) > NO_DIGITS * rows)
         safe = np.where(good[..., None, None], safe, np.eye(a.shape[-1]))
         return np.where(good[..., None, None], np.linalg.inv(safe), np.nan)
 
